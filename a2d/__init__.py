@@ -1,0 +1,1 @@
+"""a2d: from an analog audio equaliser to its proven digital twin."""

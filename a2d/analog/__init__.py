@@ -1,0 +1,1 @@
+"""What the hardware does: H(s), from section parameters, component values or a measurement."""

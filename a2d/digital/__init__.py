@@ -1,0 +1,1 @@
+"""From analog sections to their digital twins, one file a method."""

@@ -1,0 +1,105 @@
+"""The digital twin: second-order sections at one sample rate, and how they came about."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from a2d import checks
+from a2d.analog.chain import AnalogChain
+from a2d.arrays import ArrayLike, ComplexArray, FloatArray
+from a2d.digital.methods import METHODS
+from a2d.digital.response import chain_response
+from a2d.errors import ParameterError
+
+WIDEST_BAND_HZ = (20.0, 20_000.0)
+HIGHEST_BAND_FRACTION = 0.4535  # of the sample rate: 20 kHz at 44.1 kHz, the design's upper end at lower rates
+
+
+@dataclass(frozen=True, eq=False)
+class Twin:
+    """A cascade of second-order sections at one sample rate.
+
+    Parameters
+    ----------
+    names, methods
+        One a section, S of them.
+    sos
+        Shape [S, 6]: b0, b1, b2, 1, a1, a2, as `scipy.signal.sosfilt` takes them.
+    sample_rate_hz
+        Hz.
+    match_hz
+        Shape [S], Hz: where each section's response is exact by its method.
+    """
+
+    names: tuple[str, ...]
+    methods: tuple[str, ...]
+    sos: FloatArray
+    sample_rate_hz: float
+    match_hz: FloatArray
+
+    def response(self, f_hz: ArrayLike) -> ComplexArray:
+        """H(e^{j2πf/fs}) of the whole twin at `f_hz` [F] (Hz); complex, shape [F]."""
+        f = np.atleast_1d(np.asarray(f_hz, dtype=np.float64))
+        return chain_response(self.sos, f, self.sample_rate_hz)
+
+    def __len__(self) -> int:
+        return len(self.names)
+
+
+def default_band_hz(sample_rate_hz: ArrayLike) -> FloatArray:
+    """20 Hz to 20 kHz, or to 0.4535 of the sample rate where that is lower; shape [..., 2]."""
+    top = np.minimum(WIDEST_BAND_HZ[1], HIGHEST_BAND_FRACTION * np.asarray(sample_rate_hz, dtype=np.float64))
+    return np.stack([np.broadcast_to(WIDEST_BAND_HZ[0], top.shape), top], axis=-1)
+
+
+def make_twin(
+    chain: AnalogChain,
+    sample_rate_hz: float,
+    *,
+    method: str | Sequence[str] = "bilinear",
+    match_hz: ArrayLike | None = None,
+    band_hz: tuple[float, float] | None = None,
+) -> Twin:
+    """The digital twin of an analog chain, section by section.
+
+    Parameters
+    ----------
+    chain
+        The analog sections.
+    sample_rate_hz
+        Hz.
+    method
+        A name in `a2d.METHODS`, or one a section.
+    match_hz
+        Hz, one or one a section: where the response is exact. The sections' f0 when absent.
+    band_hz
+        Hz, the band that matters to methods that minimise an error; `default_band_hz` when absent.
+
+    Raises
+    ------
+    ParameterError
+        A match frequency at or above half the sample rate; an unknown method.
+
+    Examples
+    --------
+    >>> chain = AnalogChain.of(["rc"], b=[[0, 0, 1]], a=[[0, 1e-3, 1]])
+    >>> twin = make_twin(chain, 48_000.0)
+    >>> [round(float(v), 6) for v in twin.sos[0]]
+    [0.01031, 0.01031, 0.0, 1.0, -0.979379, 0.0]
+    """
+    rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
+    match = np.broadcast_to(chain.f0_hz if match_hz is None else np.asarray(match_hz, dtype=np.float64), len(chain))
+    for name, f in zip(chain.names, match, strict=True):
+        checks.below_half_rate(f'the match frequency of section "{name}"', f, rate)
+    methods = (method,) * len(chain) if isinstance(method, str) else tuple(method)
+    band = default_band_hz(rate) if band_hz is None else np.asarray(band_hz, dtype=np.float64)
+    sos = np.empty((len(chain), 6))
+    for name in dict.fromkeys(methods):
+        if name not in METHODS:
+            raise ParameterError(f"there is no method {name!r} (allowed: {', '.join(METHODS)})")
+        rows = np.array([m == name for m in methods])
+        sos[rows] = METHODS[name](chain.b[rows], chain.a[rows], np.asarray(rate), match[rows], band)
+    return Twin(chain.names, methods, sos, rate, match.copy())

@@ -1,0 +1,1 @@
+"""What goes to the firmware: headers, kernels, test vectors, the manifest."""

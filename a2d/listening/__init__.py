@@ -1,0 +1,1 @@
+"""Signals, rendering, level matching, comparison by ear, measurement."""

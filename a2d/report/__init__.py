@@ -1,0 +1,1 @@
+"""Plots and the report page."""

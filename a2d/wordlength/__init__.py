@@ -1,0 +1,1 @@
+"""Number formats, rounding, section order and scaling, noise, bit-true simulation."""
