@@ -50,7 +50,8 @@ def below_half_rate(name: str, frequency_hz: ArrayLike, sample_rate_hz: ArrayLik
     if np.any(bad):
         first = tuple(np.argwhere(bad)[0])
         raise ParameterError(
-            f"{name} must lie below half the sample rate ({frequency[first]:g} Hz, allowed below {rate[first] / 2:g} Hz)"
+            f"{name} must lie below half the sample rate "
+            f"({frequency[first]:g} Hz at {rate[first]:g} Hz, allowed below {rate[first] / 2:g} Hz)"
         )
 
 
