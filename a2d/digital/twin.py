@@ -88,7 +88,7 @@ def make_twin(
     >>> chain = AnalogChain.of(["rc"], b=[[0, 0, 1]], a=[[0, 1e-3, 1]])
     >>> twin = make_twin(chain, 48_000.0)
     >>> [round(float(v), 6) for v in twin.sos[0]]
-    [0.01031, 0.01031, 0.0, 1.0, -0.979379, 0.0]
+    [0.01031, 0.01031, 0.0, 1.0, -0.979381, 0.0]
     """
     rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
     match = np.broadcast_to(chain.f0_hz if match_hz is None else np.asarray(match_hz, dtype=np.float64), len(chain))
