@@ -1,0 +1,49 @@
+"""From the design file's sections to the analog chain."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+import numpy as np
+
+from a2d.analog.chain import AnalogChain
+from a2d.analog.kinds import sections_of
+from a2d.analog.sections import Sections, scaled
+from a2d.design.model import Design
+from a2d.design.section import Section
+from a2d.errors import A2dError, DesignError, Fault
+
+# How each sort of [[section]] becomes analog sections: the first class that fits.
+BUILDERS: dict[type[Section], Callable[[Section], Sections]] = {Section: sections_of}
+
+
+def build_chain(design: Design) -> AnalogChain:
+    """The cascade of all sections of a design; several sections of one entry are called `name.1`, `name.2`.
+
+    Raises
+    ------
+    DesignError
+        Sections that cannot be built, all of them.
+    """
+    names: list[str] = []
+    built: list[Sections] = []
+    faults: list[Fault] = []
+    for section in design.sections:
+        try:
+            sections = build_section(section)
+        except A2dError as error:
+            faults.append(Fault(str(error), f'section "{section.name}"'))
+            continue
+        count = len(sections.f0_hz)
+        names += [section.name] if count == 1 else [f"{section.name}.{i + 1}" for i in range(count)]
+        built.append(sections)
+    if faults:
+        raise DesignError(faults)
+    b, a, f0 = (np.concatenate(parts) for parts in zip(*built, strict=True))
+    return AnalogChain.of(names, b, a, f0)
+
+
+def build_section(section: Section) -> Sections:
+    """The analog sections of one entry, its factor included."""
+    builder = next(build for kind, build in BUILDERS.items() if isinstance(section, kind))
+    return scaled(builder(section), section.factor)

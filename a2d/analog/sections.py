@@ -1,0 +1,57 @@
+"""Sections as arrays: what every section kind, circuit and bank gives to the chain."""
+
+from __future__ import annotations
+
+from typing import NamedTuple, TypeAlias
+
+import numpy as np
+
+from a2d.analog.response import section_response
+from a2d.arrays import ArrayLike, FloatArray
+
+Coefficients: TypeAlias = tuple[ArrayLike, ArrayLike, ArrayLike]
+
+
+class Sections(NamedTuple):
+    """Analog sections in cascade.
+
+    Attributes
+    ----------
+    b, a
+        Shape [..., S, 3]: coefficients of s², s, 1 of numerator and denominator, s in rad/s.
+    f0_hz
+        Shape [..., S]: each section's characteristic frequency, Hz.
+    """
+
+    b: FloatArray
+    a: FloatArray
+    f0_hz: FloatArray
+
+
+def single(
+    b: tuple[ArrayLike, ArrayLike, ArrayLike], a: tuple[ArrayLike, ArrayLike, ArrayLike], w0: FloatArray
+) -> Sections:
+    """One section from coefficients in s normalised to `w0` (rad/s); all broadcast together to [...]."""
+    b2, b1, b0, a2, a1, a0, w = np.broadcast_arrays(*b, *a, w0)
+    powers = np.stack([1.0 / w**2, 1.0 / w, np.ones_like(w)], axis=-1)
+    rows_b = np.stack([b2, b1, b0], axis=-1) * powers
+    rows_a = np.stack([a2, a1, a0], axis=-1) * powers
+    return Sections(rows_b[..., np.newaxis, :], rows_a[..., np.newaxis, :], (w / (2.0 * np.pi))[..., np.newaxis])
+
+
+def scaled(sections: Sections, factor: ArrayLike) -> Sections:
+    """The same with a factor on the whole, put on the first section."""
+    b = sections.b.copy()
+    b[..., 0, :] *= np.asarray(factor, dtype=np.float64)[..., np.newaxis]
+    return Sections(b, sections.a, sections.f0_hz)
+
+
+def normalised(sections: Sections, reference_hz: float, gain: float) -> Sections:
+    """The same with |H| = `gain` (a factor) at `reference_hz` (0 allowed); the polarity stays."""
+    h = section_response(sections.b, sections.a, np.array([reference_hz]))[..., 0]
+    return scaled(sections, gain / np.abs(np.prod(h, axis=-1)))
+
+
+def amplitude(gain_db: ArrayLike) -> FloatArray:
+    """10^(gain/20)."""
+    return np.asarray(10.0 ** (np.asarray(gain_db, dtype=np.float64) / 20.0))
