@@ -1,0 +1,1 @@
+"""Discrete against analog: errors, limits, verdict."""
