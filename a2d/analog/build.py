@@ -26,9 +26,10 @@ def build_chain(design: Design) -> AnalogChain:
         Sections that cannot be built, all of them.
     """
     names: list[str] = []
+    owners: list[int] = []
     built: list[Sections] = []
     faults: list[Fault] = []
-    for section in design.sections:
+    for index, section in enumerate(design.sections):
         try:
             sections = build_section(section)
         except A2dError as error:
@@ -36,11 +37,12 @@ def build_chain(design: Design) -> AnalogChain:
             continue
         count = len(sections.f0_hz)
         names += [section.name] if count == 1 else [f"{section.name}.{i + 1}" for i in range(count)]
+        owners += [index] * count
         built.append(sections)
     if faults:
         raise DesignError(faults)
     b, a, f0 = (np.concatenate(parts) for parts in zip(*built, strict=True))
-    return AnalogChain.of(names, b, a, f0)
+    return AnalogChain.of(names, b, a, f0, owners)
 
 
 def build_section(section: Section) -> Sections:

@@ -26,6 +26,8 @@ class AnalogChain:
         b2 = a2 = 0, a plain gain has b = [0, 0, g], a = [0, 0, 1].
     f0_hz
         Shape [S], Hz: where each section is matched unless told otherwise.
+    owners
+        The entry of the design file that each section belongs to, as an index; 0 to S - 1 without a design file.
 
     Examples
     --------
@@ -38,6 +40,7 @@ class AnalogChain:
     b: FloatArray
     a: FloatArray
     f0_hz: FloatArray
+    owners: tuple[int, ...]
 
     @classmethod
     def of(cls, names: Sequence[str], b: ArrayLike, a: ArrayLike, f0_hz: ArrayLike | None = None) -> AnalogChain:
@@ -50,7 +53,8 @@ class AnalogChain:
         if np.any(np.all(a_array == 0.0, axis=-1)):
             raise ParameterError("a section's denominator is zero (a = [0, 0, 0], allowed any other)")
         f0 = natural_frequency_hz(b_array, a_array) if f0_hz is None else checks.positive("f0_hz", f0_hz, "Hz")
-        return cls(tuple(names), b_array, a_array, np.broadcast_to(f0, (len(names),)).astype(np.float64))
+        f0_rows = np.broadcast_to(f0, (len(names),)).astype(np.float64)
+        return cls(tuple(names), b_array, a_array, f0_rows, tuple(range(len(names)) if owners is None else owners))
 
     def response(self, f_hz: ArrayLike) -> ComplexArray:
         """H(j2πf) of the whole chain at `f_hz` [F] (Hz); complex, shape [F]."""

@@ -6,7 +6,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Any, TypeAlias
+from typing import Any, NamedTuple
 
 import numpy as np
 
@@ -16,7 +16,25 @@ from a2d.arrays import ComplexArray
 from a2d.design import kinds as design
 from a2d.design.section import Section
 
-Kind: TypeAlias = Callable[[Any], Sections]  # the argument is the class of the same name in a2d.design.kinds
+
+class Kind(NamedTuple):
+    """How a kind is built, and the function whose docstring says its H(s).
+
+    Attributes
+    ----------
+    build
+        From the class of the same name in `a2d.design.kinds` to sections.
+    formula
+        The function that holds the equation.
+    """
+
+    build: Callable[[Any], Sections]
+    formula: Callable[..., Any]
+
+    @property
+    def equation(self) -> str:
+        """The formula's docstring up to the first empty line, on one line."""
+        return " ".join((self.formula.__doc__ or "").partition("\n\n")[0].split())
 
 
 def peaking_w3c_q(p: design.Peaking) -> float:
@@ -53,26 +71,36 @@ def _polynomial(p: design.Polynomial) -> Sections:
 
 
 KINDS: dict[str, Kind] = {
-    "gain": lambda p: filters.gain(p.gain),
-    "lowpass": lambda p: filters.lowpass(p.f0, p.q, p.gain),
-    "highpass": lambda p: filters.highpass(p.f0, p.q, p.gain),
-    "allpass": lambda p: filters.allpass(p.f0, p.q, p.gain),
-    "bandpass": lambda p: filters.bandpass(p.f0, p.q, p.gain),
-    "bandpass_constant_skirt": lambda p: filters.bandpass_constant_skirt(p.f0, p.q, p.gain),
-    "notch": lambda p: filters.notch(p.f0, p.q, p.gain),
-    "peaking": lambda p: equalisers.peaking(p.f0, peaking_w3c_q(p), p.gain),
-    "low_shelf": lambda p: equalisers.low_shelf(p.f0, p.gain, _shelf_q(p)),
-    "high_shelf": lambda p: equalisers.high_shelf(p.f0, p.gain, _shelf_q(p)),
-    "butterworth": lambda p: _prototype(p, prototypes.butterworth_poles(p.order), p.gain),
-    "bessel": lambda p: _prototype(p, prototypes.bessel_poles(p.order, p.normalisation), p.gain),
-    "chebyshev": _chebyshev,
-    "time_constants": lambda p: given.time_constants(p.poles, p.zeros, p.highpass, p.gain, p.reference),
-    "pole_zero": lambda p: given.pole_zero(_roots(p.poles), _roots(p.zeros), p.gain, p.reference or 0.0),
-    "polynomial": _polynomial,
+    "gain": Kind(lambda p: filters.gain(p.gain), filters.gain),
+    "lowpass": Kind(lambda p: filters.lowpass(p.f0, p.q, p.gain), filters.lowpass),
+    "highpass": Kind(lambda p: filters.highpass(p.f0, p.q, p.gain), filters.highpass),
+    "allpass": Kind(lambda p: filters.allpass(p.f0, p.q, p.gain), filters.allpass),
+    "bandpass": Kind(lambda p: filters.bandpass(p.f0, p.q, p.gain), filters.bandpass),
+    "bandpass_constant_skirt": Kind(
+        lambda p: filters.bandpass_constant_skirt(p.f0, p.q, p.gain), filters.bandpass_constant_skirt
+    ),
+    "notch": Kind(lambda p: filters.notch(p.f0, p.q, p.gain), filters.notch),
+    "peaking": Kind(lambda p: equalisers.peaking(p.f0, peaking_w3c_q(p), p.gain), equalisers.peaking),
+    "low_shelf": Kind(lambda p: equalisers.low_shelf(p.f0, p.gain, _shelf_q(p)), equalisers.low_shelf),
+    "high_shelf": Kind(lambda p: equalisers.high_shelf(p.f0, p.gain, _shelf_q(p)), equalisers.high_shelf),
+    "butterworth": Kind(
+        lambda p: _prototype(p, prototypes.butterworth_poles(p.order), p.gain), prototypes.butterworth_poles
+    ),
+    "bessel": Kind(
+        lambda p: _prototype(p, prototypes.bessel_poles(p.order, p.normalisation), p.gain), prototypes.bessel_poles
+    ),
+    "chebyshev": Kind(_chebyshev, prototypes.chebyshev_poles),
+    "time_constants": Kind(
+        lambda p: given.time_constants(p.poles, p.zeros, p.highpass, p.gain, p.reference), given.time_constants
+    ),
+    "pole_zero": Kind(
+        lambda p: given.pole_zero(_roots(p.poles), _roots(p.zeros), p.gain, p.reference or 0.0), given.pole_zero
+    ),
+    "polynomial": Kind(_polynomial, given.polynomial),
 }
 
 
 def sections_of(section: Section) -> Sections:
     """The analog sections of a design's section with a `kind`, without its factor."""
     kind: str = getattr(section, "kind")  # noqa: B009 - every class in Section.by_kind has it
-    return KINDS[kind](section)
+    return KINDS[kind].build(section)

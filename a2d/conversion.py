@@ -1,0 +1,81 @@
+"""The main job: from a design to twins at every rate, with their errors and the verdict."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from a2d.analog.build import build_chain
+from a2d.analog.chain import AnalogChain
+from a2d.arrays import FloatArray
+from a2d.compare.errors import Comparison, band_of, compare, compare_sections
+from a2d.compare.verdict import Breach, judge
+from a2d.design.model import Design
+from a2d.digital.twin import Twin, make_twin
+
+
+@dataclass(frozen=True, eq=False)
+class Judged:
+    """A twin with its errors.
+
+    Attributes
+    ----------
+    twin
+        The sections at one sample rate.
+    comparison
+        Errors of the whole chain.
+    sections
+        Errors of each section alone; empty where twin and chain do not have one section each for each.
+    breaches
+        The limits that the whole chain breaks.
+    """
+
+    twin: Twin
+    comparison: Comparison
+    sections: tuple[Comparison, ...]
+    breaches: tuple[Breach, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class Conversion:
+    """A design, its analog chain and its judged twins in the order of the sample rates."""
+
+    design: Design
+    chain: AnalogChain
+    judged: tuple[Judged, ...]
+
+    @property
+    def within_limits(self) -> bool:
+        """Whether no twin breaks a limit."""
+        return not any(j.breaches for j in self.judged)
+
+
+def convert(design: Design) -> Conversion:
+    """Twins of a design at all of its sample rates, compared and judged.
+
+    Raises
+    ------
+    DesignError, ParameterError, ConversionError
+        A section cannot be built, or has no twin at one of the rates.
+    """
+    chain = build_chain(design)
+    return Conversion(design, chain, tuple(convert_at(design, chain, rate) for rate in design.design.sample_rates))
+
+
+def convert_at(design: Design, chain: AnalogChain, sample_rate_hz: float) -> Judged:
+    """The judged twin of a design's chain at one sample rate (Hz), which need not be one of the design's."""
+    stated = design.limits.band if design.limits is not None else None
+    low, high = (float(f) for f in band_of(sample_rate_hz, stated))
+    entries = [design.sections[owner] for owner in chain.owners]
+    methods = [entry.method or design.design.method for entry in entries]
+    twin = make_twin(chain, sample_rate_hz, method=methods, match_hz=_match_points(design, chain), band_hz=(low, high))
+    comparison = compare(chain, twin, (low, high))
+    sections = compare_sections(chain, twin, (low, high)) if len(twin) == len(chain) else ()
+    return Judged(twin, comparison, sections, judge(comparison, design.limits))
+
+
+def _match_points(design: Design, chain: AnalogChain) -> FloatArray:
+    """Each section's match frequency: the one that the file states, else its f0; Hz, shape [S]."""
+    stated = [design.sections[owner].match for owner in chain.owners]
+    return np.array([f0 if match is None else match for match, f0 in zip(stated, chain.f0_hz, strict=True)])

@@ -1,0 +1,87 @@
+"""NAME.twin.json and NAME.sos.csv: the numbers for machines."""
+
+from __future__ import annotations
+
+import json
+from importlib.metadata import PackageNotFoundError, version
+from typing import Any
+
+from a2d.compare.errors import Comparison, Worst
+from a2d.conversion import Conversion, Judged
+
+FORMAT = 1
+
+
+def tool_name() -> str:
+    """`a2d` and its version."""
+    try:
+        return f"a2d {version('a2d')}"
+    except PackageNotFoundError:
+        return "a2d"
+
+
+def manifest(conversion: Conversion, sha256: str) -> str:
+    """The manifest as JSON; every number reads back to the same double.
+
+    Parameters
+    ----------
+    conversion
+        The judged twins.
+    sha256
+        Of the design file's bytes.
+    """
+    table, chain = conversion.design.design, conversion.chain
+    content = {
+        "format": FORMAT,
+        "tool": tool_name(),
+        "design": {"name": table.name, "title": table.title, "sha256": sha256},
+        "analog": {
+            "sections": [
+                {"name": name, "b": b.tolist(), "a": a.tolist(), "f0_hz": float(f0)}
+                for name, b, a, f0 in zip(chain.names, chain.b, chain.a, chain.f0_hz, strict=True)
+            ]
+        },
+        "twins": [_twin(judged) for judged in conversion.judged],
+    }
+    return json.dumps(content, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
+
+
+def _twin(judged: Judged) -> dict[str, Any]:
+    twin = judged.twin
+    return {
+        "sample_rate_hz": float(twin.sample_rate_hz),
+        "sections": [
+            {"name": name, "method": method, "match_hz": float(match), "sos": row.tolist()}
+            for name, method, match, row in zip(twin.names, twin.methods, twin.match_hz, twin.sos, strict=True)
+        ],
+        "comparison": _comparison(judged.comparison),
+        "section_comparisons": [_comparison(section) for section in judged.sections],
+        "within_limits": not judged.breaches,
+        "broken_limits": [str(breach) for breach in judged.breaches],
+    }
+
+
+def _comparison(comparison: Comparison) -> dict[str, Any]:
+    return {
+        "band_hz": list(comparison.band_hz),
+        "magnitude_db": _worst(comparison.magnitude_db),
+        "phase_deg": _worst(comparison.phase_deg),
+        "group_delay_us": _worst(comparison.group_delay_us),
+        "phase_without_delay_deg": _worst(comparison.phase_without_delay_deg) | {"delay_us": comparison.delay_us},
+    }
+
+
+def _worst(worst: Worst) -> dict[str, float]:
+    return {"worst": worst.worst, "at_hz": worst.at_hz}
+
+
+def sos_table(conversion: Conversion) -> str:
+    """NAME.sos.csv: a row a section and rate; y = b0·x + b1·x1 + b2·x2 - a1·y1 - a2·y2."""
+    lines = ["sample_rate_hz,section,method,match_hz,b0,b1,b2,a0,a1,a2"]
+    for judged in conversion.judged:
+        twin = judged.twin
+        for name, method, match, row in zip(twin.names, twin.methods, twin.match_hz, twin.sos, strict=True):
+            numbers = [repr(float(v)) for v in (match, *row)]
+            quoted = '"' + name.replace('"', '""') + '"'
+            lines.append(",".join([repr(float(twin.sample_rate_hz)), quoted, method, *numbers]))
+    return "\n".join(lines) + "\n"
