@@ -43,7 +43,14 @@ class AnalogChain:
     owners: tuple[int, ...]
 
     @classmethod
-    def of(cls, names: Sequence[str], b: ArrayLike, a: ArrayLike, f0_hz: ArrayLike | None = None) -> AnalogChain:
+    def of(
+        cls,
+        names: Sequence[str],
+        b: ArrayLike,
+        a: ArrayLike,
+        f0_hz: ArrayLike | None = None,
+        owners: Sequence[int] | None = None,
+    ) -> AnalogChain:
         """Check and build a chain; a missing `f0_hz` is taken from the poles (`natural_frequency_hz`)."""
         b_array, a_array = checks.finite("b", b), checks.finite("a", a)
         if b_array.shape != a_array.shape or b_array.shape != (len(names), 3):
@@ -54,7 +61,8 @@ class AnalogChain:
             raise ParameterError("a section's denominator is zero (a = [0, 0, 0], allowed any other)")
         f0 = natural_frequency_hz(b_array, a_array) if f0_hz is None else checks.positive("f0_hz", f0_hz, "Hz")
         f0_rows = np.broadcast_to(f0, (len(names),)).astype(np.float64)
-        return cls(tuple(names), b_array, a_array, f0_rows, tuple(range(len(names)) if owners is None else owners))
+        own = range(len(names)) if owners is None else owners
+        return cls(tuple(names), b_array, a_array, f0_rows, tuple(own))
 
     def response(self, f_hz: ArrayLike) -> ComplexArray:
         """H(j2πf) of the whole chain at `f_hz` [F] (Hz); complex, shape [F]."""

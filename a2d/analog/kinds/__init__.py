@@ -55,6 +55,18 @@ def _prototype(p: design.Butterworth | design.Bessel | design.Chebyshev, poles: 
     return of(poles, float(p.f0 or 0.0), gain)
 
 
+def _constant_skirt(p: design.BandpassConstantSkirt) -> Sections:
+    return filters.bandpass_constant_skirt(p.f0, p.q, p.gain)
+
+
+def _butterworth(p: design.Butterworth) -> Sections:
+    return _prototype(p, prototypes.butterworth_poles(p.order), p.gain)
+
+
+def _bessel(p: design.Bessel) -> Sections:
+    return _prototype(p, prototypes.bessel_poles(p.order, p.normalisation), p.gain)
+
+
 def _chebyshev(p: design.Chebyshev) -> Sections:
     poles = prototypes.chebyshev_poles(p.order, p.ripple, p.edge)
     return _prototype(p, poles, p.gain + prototypes.chebyshev_floor_db(p.order, p.ripple))
@@ -63,6 +75,14 @@ def _chebyshev(p: design.Chebyshev) -> Sections:
 def _roots(roots: tuple[design.Root, ...]) -> ComplexArray:
     empty = np.empty(0, dtype=np.complex128)
     return np.concatenate([empty, *(given.root_pair(r.f0, r.q, axis=r.axis, right=r.right) for r in roots)])
+
+
+def _time_constants(p: design.TimeConstants) -> Sections:
+    return given.time_constants(p.poles, p.zeros, p.highpass, p.gain, p.reference)
+
+
+def _pole_zero(p: design.PoleZero) -> Sections:
+    return given.pole_zero(_roots(p.poles), _roots(p.zeros), p.gain, p.reference or 0.0)
 
 
 def _polynomial(p: design.Polynomial) -> Sections:
@@ -76,26 +96,16 @@ KINDS: dict[str, Kind] = {
     "highpass": Kind(lambda p: filters.highpass(p.f0, p.q, p.gain), filters.highpass),
     "allpass": Kind(lambda p: filters.allpass(p.f0, p.q, p.gain), filters.allpass),
     "bandpass": Kind(lambda p: filters.bandpass(p.f0, p.q, p.gain), filters.bandpass),
-    "bandpass_constant_skirt": Kind(
-        lambda p: filters.bandpass_constant_skirt(p.f0, p.q, p.gain), filters.bandpass_constant_skirt
-    ),
+    "bandpass_constant_skirt": Kind(_constant_skirt, filters.bandpass_constant_skirt),
     "notch": Kind(lambda p: filters.notch(p.f0, p.q, p.gain), filters.notch),
     "peaking": Kind(lambda p: equalisers.peaking(p.f0, peaking_w3c_q(p), p.gain), equalisers.peaking),
     "low_shelf": Kind(lambda p: equalisers.low_shelf(p.f0, p.gain, _shelf_q(p)), equalisers.low_shelf),
     "high_shelf": Kind(lambda p: equalisers.high_shelf(p.f0, p.gain, _shelf_q(p)), equalisers.high_shelf),
-    "butterworth": Kind(
-        lambda p: _prototype(p, prototypes.butterworth_poles(p.order), p.gain), prototypes.butterworth_poles
-    ),
-    "bessel": Kind(
-        lambda p: _prototype(p, prototypes.bessel_poles(p.order, p.normalisation), p.gain), prototypes.bessel_poles
-    ),
+    "butterworth": Kind(_butterworth, prototypes.butterworth_poles),
+    "bessel": Kind(_bessel, prototypes.bessel_poles),
     "chebyshev": Kind(_chebyshev, prototypes.chebyshev_poles),
-    "time_constants": Kind(
-        lambda p: given.time_constants(p.poles, p.zeros, p.highpass, p.gain, p.reference), given.time_constants
-    ),
-    "pole_zero": Kind(
-        lambda p: given.pole_zero(_roots(p.poles), _roots(p.zeros), p.gain, p.reference or 0.0), given.pole_zero
-    ),
+    "time_constants": Kind(_time_constants, given.time_constants),
+    "pole_zero": Kind(_pole_zero, given.pole_zero),
     "polynomial": Kind(_polynomial, given.polynomial),
 }
 
