@@ -10,9 +10,10 @@ import numpy as np
 from a2d import checks
 from a2d.analog.chain import AnalogChain
 from a2d.arrays import ArrayLike, ComplexArray, FloatArray
-from a2d.digital.methods import METHODS
+from a2d.digital.methods import EXACT_AT_MATCH, METHODS
+from a2d.digital.refusal import SectionRefused
 from a2d.digital.response import chain_response
-from a2d.errors import ParameterError
+from a2d.errors import ConversionError, ParameterError
 
 WIDEST_BAND_HZ = (20.0, 20_000.0)
 HIGHEST_BAND_FRACTION = 0.4535  # of the sample rate: 20 kHz at 44.1 kHz, the design's upper end at lower rates
@@ -92,14 +93,24 @@ def make_twin(
     """
     rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
     match = np.broadcast_to(chain.f0_hz if match_hz is None else np.asarray(match_hz, dtype=np.float64), len(chain))
-    for name, f in zip(chain.names, match, strict=True):
-        checks.below_half_rate(f'the match frequency of section "{name}"', f, rate)
     methods = (method,) * len(chain) if isinstance(method, str) else tuple(method)
+    _check_methods(chain.names, methods, match, rate)
     band = default_band_hz(rate) if band_hz is None else np.asarray(band_hz, dtype=np.float64)
     sos = np.empty((len(chain), 6))
     for name in dict.fromkeys(methods):
-        if name not in METHODS:
-            raise ParameterError(f"there is no method {name!r} (allowed: {', '.join(METHODS)})")
-        rows = np.array([m == name for m in methods])
-        sos[rows] = METHODS[name](chain.b[rows], chain.a[rows], np.asarray(rate), match[rows], band)
+        rows = np.flatnonzero([m == name for m in methods])
+        try:
+            sos[rows] = METHODS[name](chain.b[rows], chain.a[rows], np.asarray(rate), match[rows], band)
+        except SectionRefused as error:
+            refused = ", ".join(f'"{chain.names[rows[r]]}"' for r in error.rows)
+            raise ConversionError(f"{error.reason} (section {refused} at {rate:g} Hz)") from error
     return Twin(chain.names, methods, sos, rate, match.copy())
+
+
+def _check_methods(names: Sequence[str], methods: Sequence[str], match: FloatArray, rate: float) -> None:
+    """Refuse unknown methods, and match frequencies that a method cannot be exact at."""
+    for name, method, f in zip(names, methods, match, strict=True):
+        if method not in METHODS:
+            raise ParameterError(f"there is no method {method!r} (allowed: {', '.join(METHODS)})")
+        if method in EXACT_AT_MATCH:
+            checks.below_half_rate(f'the match frequency of section "{name}"', f, rate)
