@@ -25,6 +25,21 @@ class BlockFilter(Protocol):
     def finish(self) -> FloatArray: ...
 
 
+class Through:
+    """Changes nothing: the input as a filter among others."""
+
+    lag = 0
+
+    def __init__(self, channels: int):
+        self._channels = channels
+
+    def push(self, block: FloatArray) -> FloatArray:
+        return block
+
+    def finish(self) -> FloatArray:
+        return np.zeros((self._channels, 0))
+
+
 class TwinFilter:
     """The digital twin: second-order sections with their states kept between blocks.
 
