@@ -54,3 +54,8 @@ class Section(DesignStruct, frozen=True, kw_only=True):
         if not isinstance(kind, str) or kind not in cls.by_kind:
             raise Unrecognised(f"there is no kind {kind!r}{nearest(str(kind), cls.by_kind)}")
         return cls.by_kind[kind]
+
+    @classmethod
+    def variants(cls) -> tuple[type[DesignStruct], ...]:
+        """All sorts of section."""
+        return tuple(cls.by_kind.values()) + tuple(cls.by_key.values()) if cls is Section else (cls,)

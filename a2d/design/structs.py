@@ -22,6 +22,11 @@ class DesignStruct(msgspec.Struct, frozen=True, kw_only=True, forbid_unknown_fie
         del table
         return cls
 
+    @classmethod
+    def variants(cls) -> tuple[type[DesignStruct], ...]:
+        """The classes that `choose` may give, for the schema."""
+        return (cls,)
+
 
 class Unrecognised(ValueError):
     """The keys of a table fit no sort of table that may stand there."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from a2d.arrays import FloatArray
+from a2d.arrays import FloatArray, IntArray
 
 
 def bilinear(
@@ -32,21 +32,25 @@ def bilinear(
     del band_hz
     half_angle = np.pi * match_hz / sample_rate_hz
     k = 2.0 * np.pi * match_hz / np.tan(half_angle)
-    first_order = (b[..., 0] == 0.0) & (a[..., 0] == 0.0)
-    shape = np.broadcast_shapes(k.shape, first_order.shape)
-    sos = np.empty((*shape, 6))
-    _substitute(b, k, first_order, sos[..., :3])
-    _substitute(a, k, first_order, sos[..., 3:])
-    scale = 1.0 / sos[..., 3]
-    sos *= scale[..., np.newaxis]
+    order = np.where(
+        (b[..., 0] != 0.0) | (a[..., 0] != 0.0), 2, np.where((b[..., 1] != 0.0) | (a[..., 1] != 0.0), 1, 0)
+    )
+    sos = np.empty((*np.broadcast_shapes(k.shape, order.shape), 6))
+    _substitute(b, k, order, sos[..., :3])
+    _substitute(a, k, order, sos[..., 3:])
+    sos *= (1.0 / sos[..., 3])[..., np.newaxis]
     sos[..., 3] = 1.0
     return sos
 
 
-def _substitute(c: FloatArray, k: FloatArray, first_order: FloatArray, out: FloatArray) -> None:
-    """Write the polynomial in z⁻¹ that c2·s² + c1·s + c0 becomes into `out` [..., 3]."""
+def _substitute(c: FloatArray, k: FloatArray, order: IntArray, out: FloatArray) -> None:
+    """Write the polynomial in z⁻¹ that c2·s² + c1·s + c0 becomes into `out` [..., 3].
+
+    Times (1 + z⁻¹)^order it is c2·k²·(1 - z⁻¹)² + c1·k·(1 - z⁻¹)(1 + z⁻¹) + c0·(1 + z⁻¹)², and one or two powers
+    less for sections of lower order.
+    """
     square, linear, constant = c[..., 0] * (k * k), c[..., 1] * k, c[..., 2]
     ends = square + constant
     out[..., 0] = ends + linear
-    out[..., 1] = np.where(first_order, constant - linear, 2.0 * (constant - square))
-    out[..., 2] = np.where(first_order, 0.0, ends - linear)
+    out[..., 1] = np.where(order == 2, 2.0 * (constant - square), np.where(order == 1, constant - linear, 0.0))
+    out[..., 2] = np.where(order == 2, ends - linear, 0.0)

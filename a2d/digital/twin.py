@@ -83,6 +83,8 @@ def make_twin(
     ------
     ParameterError
         A match frequency at or above half the sample rate; an unknown method.
+    ConversionError
+        A section has more zeros than poles, or the method has no solution for it.
 
     Examples
     --------
@@ -93,6 +95,7 @@ def make_twin(
     """
     rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
     match = np.broadcast_to(chain.f0_hz if match_hz is None else np.asarray(match_hz, dtype=np.float64), len(chain))
+    _refuse_improper(chain)
     methods = (method,) * len(chain) if isinstance(method, str) else tuple(method)
     _check_methods(chain.names, methods, match, rate)
     band = default_band_hz(rate) if band_hz is None else np.asarray(band_hz, dtype=np.float64)
@@ -114,3 +117,13 @@ def _check_methods(names: Sequence[str], methods: Sequence[str], match: FloatArr
             raise ParameterError(f"there is no method {method!r} (allowed: {', '.join(METHODS)})")
         if method in EXACT_AT_MATCH:
             checks.below_half_rate(f'the match frequency of section "{name}"', f, rate)
+
+
+def _refuse_improper(chain: AnalogChain) -> None:
+    """A numerator of higher order than the denominator would give the twin a pole on the circle, at half the rate."""
+    for name, b, a in zip(chain.names, chain.b, chain.a, strict=True):
+        if np.flatnonzero(b)[:1] < np.flatnonzero(a)[:1]:
+            raise ConversionError(
+                f'section "{name}" has more zeros than poles: it rises without end and has no stable twin; '
+                "add the pole that the hardware has"
+            )

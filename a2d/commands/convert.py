@@ -1,0 +1,69 @@
+"""`a2d convert`: the main job, from a design file to proven twins and the files that firmware takes."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+
+from a2d.commands import summary
+from a2d.commands.options import add_design, add_out
+from a2d.commands.terminal import console
+from a2d.conversion import Conversion, convert
+from a2d.design.read import DesignFile, read_design_file
+from a2d.files import write_all
+from a2d.firmware.manifest import manifest, sos_table
+
+HELP = "make the digital twin of a design: table, C header, manifest; plots, report and sound on request"
+
+
+def add_options(parser: argparse.ArgumentParser) -> None:
+    """Declare the command's options."""
+    add_design(parser)
+    add_out(parser)
+    parser.add_argument("--coefficients", action="store_true", help="show every coefficient in the terminal")
+    parser.add_argument("--plots", action="store_true", help="write plots as SVG and PNG")
+
+
+def run(args: argparse.Namespace) -> int:
+    """Convert, show, write; 1 when a limit is broken."""
+    source = read_design_file(args.design)
+    conversion = convert(source.design)
+    files = output_files(args, source, conversion)
+    write_all(args.out, files)
+    show(args, conversion, list(files))
+    return report_breaches(conversion)
+
+
+def output_files(args: argparse.Namespace, source: DesignFile, conversion: Conversion) -> dict[str, bytes | str]:
+    """Everything that goes to the output folder, by file name."""
+    name = source.design.design.name
+    files: dict[str, bytes | str] = {
+        f"{name}.twin.json": manifest(conversion, source.sha256),
+        f"{name}.sos.csv": sos_table(conversion),
+    }
+    return files
+
+
+def show(args: argparse.Namespace, conversion: Conversion, names: list[str]) -> None:
+    """The tables and notes on the terminal."""
+    out = console()
+    table = conversion.design.design
+    out.print(f"{table.name}: {table.title}" if table.title else table.name, style="bold")
+    out.print(summary.sections_table(conversion))
+    if args.coefficients:
+        print("\n".join(summary.coefficient_lines(conversion)), end="\n\n")
+    equivalents = summary.q_table(conversion)
+    if equivalents is not None:
+        out.print(equivalents)
+    out.print(summary.errors_table(conversion))
+    for note in summary.notes(conversion):
+        out.print(f"- {note}")
+    out.print(f"Written to {args.out}: {', '.join(names)}")
+
+
+def report_breaches(conversion: Conversion) -> int:
+    """Say each broken limit on standard error; the exit status."""
+    for judged in conversion.judged:
+        for breach in judged.breaches:
+            print(f"a2d convert: limit broken at {judged.twin.sample_rate_hz:g} Hz: {breach}", file=sys.stderr)
+    return 0 if conversion.within_limits else 1
