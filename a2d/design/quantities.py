@@ -103,6 +103,13 @@ class OhmOrZero(Ohm):
     above_low = False
 
 
+class Siemens(Quantity):
+    """A transconductance; a negative one inverts."""
+
+    unit, spellings = "S", ("", "S", "A/V")
+    low, high = -1e6, 1e6
+
+
 class Farad(Quantity):
     """A capacitance."""
 

@@ -1,0 +1,93 @@
+"""The pencil G + s·C of a network or a bank, and what becomes of it when the reactances are pulled out.
+
+C = U·diag(c)·Vᵀ has one column a reactance, and its sum is never formed: with s = σ + t
+
+    det(G + s·C) = det(G + σ·C) · det(I + t·K),    K = diag(c)·Vᵀ·(G + σ·C)⁻¹·U
+
+(Sylvester's determinant identity), so that all unknowns without dynamics are gone, without a rank decision, and the
+generalised eigenvalues of (G, C) are those of a matrix as small as the order. The zeros are those of the pencil
+bordered with source and output; its K is K - p·qᵀ/H(σ), with p, q below.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from a2d.arrays import ComplexArray, FloatArray
+
+
+@dataclass(frozen=True, eq=False)
+class Pencil:
+    """(G + s·U·diag(c)·Vᵀ)·x = e, H = outᵀ·x.
+
+    Parameters
+    ----------
+    g
+        Shape [..., n, n].
+    u, v
+        Shape [n, m]: where the reactances act and what they see.
+    c
+        Shape [..., m]: their values; s in rad/s.
+    e, out
+        Shape [n].
+    entries
+        (rows, columns, values) of g before they were summed, for exact arithmetic; one network only.
+    """
+
+    g: FloatArray
+    u: FloatArray
+    v: FloatArray
+    c: FloatArray
+    e: FloatArray
+    out: FloatArray
+    entries: tuple[list[int], list[int], list[float]] = ((), (), ())  # type: ignore[assignment]
+
+    def susceptance(self) -> FloatArray:
+        """C, shape [..., n, n]."""
+        return np.asarray((self.u * self.c[..., np.newaxis, :]) @ self.v.T)
+
+
+@dataclass(frozen=True, eq=False)
+class Reduced:
+    """A pencil seen from shifts σ: H(σ), and the matrices whose eigenvalues are -1/(root - σ).
+
+    Parameters
+    ----------
+    h
+        Shape [...]: H(σ).
+    poles, zeros
+        Shape [..., m, m]: K, and that of the bordered pencil (not finite where H(σ) = 0).
+    """
+
+    h: FloatArray
+    poles: FloatArray
+    zeros: FloatArray
+
+
+def reduce(pencil: Pencil, shift: FloatArray, lift: float = 0.0) -> Reduced:
+    """The pencil seen from real shifts σ [...] in rad/s, which broadcast with its own leading axes.
+
+    With `lift` the zeros are those of H + lift, which stay where they are when H itself vanishes at σ.
+    """
+    at_shift = pencil.g + np.asarray(shift)[..., np.newaxis, np.newaxis] * pencil.susceptance()
+    sides = np.concatenate([pencil.u, pencil.e[:, np.newaxis]], axis=1)
+    x = np.linalg.solve(at_shift, np.broadcast_to(sides, (*at_shift.shape[:-1], sides.shape[1])))
+    c = pencil.c[..., :, np.newaxis]
+    seen = c * (pencil.v.T @ x)
+    q_h = np.einsum("n,...nk->...k", pencil.out, x)
+    h, q = q_h[..., -1] + lift, q_h[..., :-1]
+    k, p = seen[..., :-1], seen[..., -1]
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
+        zeros = k - p[..., :, np.newaxis] * (q / h[..., np.newaxis])[..., np.newaxis, :]
+    return Reduced(h, k, zeros)
+
+
+def direct_response(pencil: Pencil, f_hz: FloatArray) -> ComplexArray:
+    """H(j2πf) by solving the pencil itself at each frequency [F] (one network), with one step of refinement."""
+    a = pencil.g + (2j * np.pi * f_hz)[:, np.newaxis, np.newaxis] * pencil.susceptance()
+    e = np.broadcast_to(pencil.e[:, np.newaxis], (*a.shape[:-1], 1))
+    x = np.linalg.solve(a, e)
+    x = x + np.linalg.solve(a, e - a @ x)
+    return np.asarray(x[..., 0] @ pencil.out)

@@ -1,0 +1,146 @@
+"""Poles, zeros and gain of a pencil, each root found from a shift of about its own size.
+
+A root r shows in the reduced matrix at the shift σ as the eigenvalue -1/(r - σ), known to a rounding error of the
+largest one; so one shift serves the roots of its own decade only. A root at infinity shows as 0 and one at zero as
+1/σ, and several of them blur into a disc around that: outside the decade too, and how many there are is known
+beforehand (`degree`), so that none of them is ever told from a finite root by its size.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from a2d.analog.network.degree import Degree, pole_degree, zero_degree
+from a2d.analog.network.pencil import Pencil, Reduced, reduce
+from a2d.arrays import ComplexArray, FloatArray
+from a2d.errors import NetworkError
+
+_MIDDLE_RAD_S = 6000.0  # about 1 kHz
+_FIRST_DECADES = np.arange(-4.0, 6.0)  # around the middle; where audio circuits have all of their roots
+_ALL_DECADES = np.arange(-12.0, 14.0)
+_OFFSETS = (1.0, 1.37, 0.71, 1.93)  # a root on the border of two decades may be counted twice or not at all
+_HALF_DECADE = np.sqrt(10.0)
+_SINGULAR = "the network's equations have no unique solution (look for parts that leave a voltage or current open)"
+
+
+@dataclass(frozen=True, eq=False)
+class ZeroPole:
+    """H(s) = gain·Π(s - zeros)/Π(s - poles), rad/s; roots at zero are exact, conjugates come in pairs."""
+
+    zeros: ComplexArray
+    poles: ComplexArray
+    gain: float
+
+    def response(self, f_hz: FloatArray) -> ComplexArray:
+        """H(j2πf) at [F] (Hz)."""
+        s = 2j * np.pi * np.asarray(f_hz)[..., np.newaxis]
+        zeros, poles = s - self.zeros, s - self.poles
+        size = min(len(self.zeros), len(self.poles))
+        paired = np.prod(zeros[..., :size] / poles[..., :size], axis=-1)
+        rest = np.prod(zeros[..., size:], axis=-1) / np.prod(poles[..., size:], axis=-1)
+        return np.asarray(self.gain * paired * rest)
+
+
+def zero_pole(pencil: Pencil) -> ZeroPole:
+    """Poles, zeros and gain of one pencil, those that cancel still included.
+
+    Raises
+    ------
+    NetworkError
+        The equations have no unique solution, the output is zero, or the roots cannot be told apart.
+    """
+    of_poles, of_zeros = pole_degree(pencil), zero_degree(pencil)
+    if of_poles is None:
+        raise NetworkError(_SINGULAR)
+    if of_zeros is None:
+        raise NetworkError("the output stays at zero whatever the input does")
+    (poles, zeros), shifts, h = _search(pencil, (of_poles, of_zeros))
+    return _with_gain(poles, zeros, of_poles, of_zeros, shifts, h)
+
+
+def poles_of(pencil: Pencil) -> ComplexArray:
+    """The finite poles of one pencil, rad/s, those at zero included.
+
+    Raises
+    ------
+    NetworkError
+        The equations have no unique solution, or the poles cannot be told apart.
+    """
+    degree = pole_degree(pencil)
+    if degree is None:
+        raise NetworkError(_SINGULAR)
+    (poles,), *_ = _search(pencil, (degree,))
+    return _at_zero(poles, degree)
+
+
+def _search(pencil: Pencil, degrees: Sequence[Degree]) -> tuple[list[ComplexArray], FloatArray, FloatArray]:
+    """The poles, and the zeros where `degrees` has two, with the shifts that they were found from and H there."""
+    found: list[ComplexArray] = []
+    for offset in _OFFSETS:
+        for decades in (_FIRST_DECADES, _ALL_DECADES):
+            shifts, seen = _seen_from(pencil, offset * _MIDDLE_RAD_S * 10.0**decades)
+            matrices = (seen.poles, seen.zeros)[: len(degrees)]
+            found = [_within(m, shifts) for m in matrices]
+            if all(len(roots) == degree.elsewhere for roots, degree in zip(found, degrees, strict=True)):
+                return found, shifts, seen.h
+    counts = ", ".join(f"{len(r)} of {d.elsewhere}" for r, d in zip(found, degrees, strict=True))
+    raise NetworkError(
+        f"the roots cannot be told apart in double precision ({counts} found; look for values far out of range)"
+    )
+
+
+def _seen_from(pencil: Pencil, shifts: FloatArray) -> tuple[FloatArray, Reduced]:
+    """The pencil from each shift; shifts at which it is singular, or H is zero, are left out."""
+    try:
+        seen = reduce(pencil, shifts)
+    except np.linalg.LinAlgError:
+        shifts = np.array([s for s in shifts if _solvable(pencil, s)])
+        seen = reduce(pencil, shifts)
+    good = np.isfinite(seen.poles).all(axis=(-2, -1))
+    if np.any(seen.h):
+        good &= np.isfinite(seen.zeros).all(axis=(-2, -1))
+    return shifts[good], Reduced(seen.h[good], seen.poles[good], seen.zeros[good])
+
+
+def _solvable(pencil: Pencil, shift: float) -> bool:
+    try:
+        reduce(pencil, np.asarray(shift))
+    except np.linalg.LinAlgError:
+        return False
+    return True
+
+
+def _within(matrices: FloatArray, shifts: FloatArray) -> ComplexArray:
+    """The roots that lie within half a decade of their own shift; conjugates made exact."""
+    eigenvalues = np.linalg.eigvals(matrices).astype(np.complex128)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        roots = shifts[:, np.newaxis] - 1.0 / eigenvalues
+        size = np.abs(roots) / shifts[:, np.newaxis]
+    found = roots[(size >= 1.0 / _HALF_DECADE) & (size < _HALF_DECADE)]
+    upper = found[found.imag > 0.0]
+    return np.concatenate([found[found.imag == 0.0], upper, upper.conj()])
+
+
+def _with_gain(
+    poles: ComplexArray, zeros: ComplexArray, of_poles: Degree, of_zeros: Degree, shifts: FloatArray, h: FloatArray
+) -> ZeroPole:
+    """The gain that H has at the shifts, where it is real; the median of those near the middle.
+
+    The factors are taken relative to the shift, (s - root)/s, so that none of their products leaves the range.
+    """
+    order = (of_zeros.total - of_poles.total) * np.log(shifts)
+    near = np.abs(np.log10(shifts / _MIDDLE_RAD_S)) < 3.0
+
+    def log_product(roots: ComplexArray) -> ComplexArray:
+        return np.asarray(np.log(1.0 - roots / shifts[:, np.newaxis]).sum(axis=-1))
+
+    gains = h * np.exp(log_product(poles) - log_product(zeros) - order).real
+    gain = float(np.median(gains[near])) if near.any() else float(np.median(gains))
+    return ZeroPole(_at_zero(zeros, of_zeros), _at_zero(poles, of_poles), gain)
+
+
+def _at_zero(roots: ComplexArray, degree: Degree) -> ComplexArray:
+    return np.concatenate([np.zeros(degree.at_zero, dtype=np.complex128), roots])
