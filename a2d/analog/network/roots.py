@@ -8,6 +8,7 @@ beforehand (`degree`), so that none of them is ever told from a finite root by i
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -19,10 +20,10 @@ from a2d.arrays import ComplexArray, FloatArray
 from a2d.errors import NetworkError
 
 _MIDDLE_RAD_S = 6000.0  # about 1 kHz
-_FIRST_DECADES = np.arange(-4.0, 6.0)  # around the middle; where audio circuits have all of their roots
-_ALL_DECADES = np.arange(-12.0, 14.0)
-_OFFSETS = (1.0, 1.37, 0.71, 1.93)  # a root on the border of two decades may be counted twice or not at all
-_HALF_DECADE = np.sqrt(10.0)
+# Steps between shifts, and how many decades around the middle they cover: where audio circuits have all of their
+# roots, where any circuit has, and the same with steps so small that many roots at infinity blur to outside of each.
+_LADDERS = ((10.0, -4.0, 5.0), (10.0, -12.0, 13.0), (1.6, -12.0, 13.0))
+_OFFSETS = (1.0, 1.37, 0.71, 1.93)  # a root on the border of two steps may be counted twice or not at all
 _SINGULAR = "the network's equations have no unique solution (look for parts that leave a voltage or current open)"
 
 
@@ -79,13 +80,15 @@ def poles_of(pencil: Pencil) -> ComplexArray:
 def _search(pencil: Pencil, degrees: Sequence[Degree]) -> tuple[list[ComplexArray], FloatArray, FloatArray]:
     """The poles, and the zeros where `degrees` has two, with the shifts that they were found from and H there."""
     found: list[ComplexArray] = []
-    for offset in _OFFSETS:
-        for decades in (_FIRST_DECADES, _ALL_DECADES):
-            shifts, seen = _seen_from(pencil, offset * _MIDDLE_RAD_S * 10.0**decades)
-            matrices = (seen.poles, seen.zeros)[: len(degrees)]
-            found = [_within(m, shifts) for m in matrices]
-            if all(len(roots) == degree.elsewhere for roots, degree in zip(found, degrees, strict=True)):
-                return found, shifts, seen.h
+    for (step, low, high), offset in itertools.product(_LADDERS, _OFFSETS):
+        rungs = np.arange(low / np.log10(step), high / np.log10(step))
+        shifts, seen = _seen_from(pencil, offset * _MIDDLE_RAD_S * step**rungs)
+        found = [
+            _within(matrix, shifts, step, degree.elsewhere)
+            for matrix, degree in zip((seen.poles, seen.zeros), degrees, strict=False)
+        ]
+        if all(len(roots) == degree.elsewhere for roots, degree in zip(found, degrees, strict=True)):
+            return found, shifts, seen.h
     counts = ", ".join(f"{len(r)} of {d.elsewhere}" for r, d in zip(found, degrees, strict=True))
     raise NetworkError(
         f"the roots cannot be told apart in double precision ({counts} found; look for values far out of range)"
@@ -113,13 +116,15 @@ def _solvable(pencil: Pencil, shift: float) -> bool:
     return True
 
 
-def _within(matrices: FloatArray, shifts: FloatArray) -> ComplexArray:
-    """The roots that lie within half a decade of their own shift; conjugates made exact."""
+def _within(matrices: FloatArray, shifts: FloatArray, step: float, expected: int) -> ComplexArray:
+    """The roots that lie within half a step of their own shift; conjugates made exact."""
+    if expected == 0:
+        return np.zeros(0, dtype=np.complex128)
     eigenvalues = np.linalg.eigvals(matrices).astype(np.complex128)
     with np.errstate(divide="ignore", invalid="ignore"):
         roots = shifts[:, np.newaxis] - 1.0 / eigenvalues
         size = np.abs(roots) / shifts[:, np.newaxis]
-    found = roots[(size >= 1.0 / _HALF_DECADE) & (size < _HALF_DECADE)]
+    found = roots[(size >= step**-0.5) & (size < step**0.5)]
     upper = found[found.imag > 0.0]
     return np.concatenate([found[found.imag == 0.0], upper, upper.conj()])
 
