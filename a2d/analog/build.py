@@ -3,18 +3,21 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import Any
 
 import numpy as np
 
 from a2d.analog.chain import AnalogChain
+from a2d.analog.hardware import network_sections
 from a2d.analog.kinds import sections_of
 from a2d.analog.sections import Sections, scaled
+from a2d.design.hardware import NetworkSection
 from a2d.design.model import Design
 from a2d.design.section import Section
 from a2d.errors import A2dError, DesignError, Fault
 
 # How each sort of [[section]] becomes analog sections: the first class that fits.
-BUILDERS: dict[type[Section], Callable[[Section], Sections]] = {Section: sections_of}
+BUILDERS: dict[type[Section], Callable[[Any], Sections]] = {NetworkSection: network_sections, Section: sections_of}
 
 
 def build_chain(design: Design) -> AnalogChain:

@@ -6,7 +6,7 @@ import re
 
 import msgspec
 
-from a2d.design import kinds  # noqa: F401  (registers the section kinds)
+from a2d.design import hardware, kinds  # noqa: F401  (they register the sorts of section)
 from a2d.design.c_words import C_WORDS
 from a2d.design.quantities import Degree, Hertz, PositiveDecibel, SampleRate, Seconds
 from a2d.design.section import MethodName, Section

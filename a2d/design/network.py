@@ -46,6 +46,11 @@ class Part(DesignStruct, frozen=True, kw_only=True):
         strange = next((k for k in table if k not in ("nodes", "tolerance")), "")
         raise Unrecognised(f'there is no part "{strange}"{nearest(strange, cls.by_key)}')
 
+    @classmethod
+    def variants(cls) -> tuple[type[DesignStruct], ...]:
+        """All sorts of part."""
+        return tuple(cls.by_key.values()) if cls is Part else (cls,)
+
     def terminals(self) -> tuple[str, ...]:
         """The nodes that the part is connected to, in its own order."""
         return tuple(getattr(self, "nodes"))  # noqa: B009  (declared by the subclasses, each with its own count)
