@@ -8,6 +8,7 @@ from __future__ import annotations
 from typing import Literal, TypeAlias
 
 from a2d.design.quantities import (
+    Coefficient,
     Decibel,
     Hertz,
     HertzOrZero,
@@ -271,8 +272,8 @@ class Polynomial(Section, frozen=True, kw_only=True):
     """b and a, coefficients of falling powers of s (rad/s), any order up to 20."""
 
     kind: Literal["polynomial"]
-    b: tuple[Number, ...]
-    a: tuple[Number, ...]
+    b: tuple[Coefficient, ...]
+    a: tuple[Coefficient, ...]
     f0: Hertz | None = None
 
     def __post_init__(self) -> None:
@@ -286,7 +287,7 @@ class Polynomial(Section, frozen=True, kw_only=True):
             raise ValueError(f"b is of higher order than a ({_order(self.b)} and {_order(self.a)}): no stable twin")
 
 
-def _order(c: tuple[Number, ...]) -> int:
+def _order(c: tuple[Coefficient, ...]) -> int:
     return len(c) - 1 - next(i for i, v in enumerate(c) if v)
 
 
@@ -310,3 +311,8 @@ Section.by_kind.update(
         "polynomial": Polynomial,
     }
 )
+
+
+def kinds_by_name() -> dict[str, type[Section]]:
+    """Every word after `kind =` with its class."""
+    return dict(Section.by_kind)

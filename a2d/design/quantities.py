@@ -71,6 +71,12 @@ class Factor(Number):
     low, high = -1e6, 1e6
 
 
+class Coefficient(Number):
+    """A coefficient of a power of s."""
+
+    low, high = -1e280, 1e280
+
+
 class Hertz(Quantity):
     """A frequency."""
 
@@ -241,10 +247,12 @@ def _with_unit(text: str, plain: str, suffix: str, kind: type[Quantity]) -> floa
         raise QuantityError(f"has {suffix!r} after the number ({text!r}, {_example(kind)})")
     bare = plain[: len(plain) - len(suffix)].strip()
     try:
-        number = float(QuantiphyQuantity(bare + prefix.replace("K", "k")))
+        number = QuantiphyQuantity(bare + prefix.replace("K", "k"))
     except (QuantiPhyError, ValueError, OverflowError) as error:
         raise QuantityError(f"is not a quantity ({text!r}, {_example(kind)})") from error
-    return number / 100.0 if unit == "%" else number
+    if number.units:  # what quantiphy did not take as a prefix: "1e5k" is 1e5 "k" to it
+        raise QuantityError(f"has an exponent and a prefix; write one of them ({text!r})")
+    return float(number) / 100.0 if unit == "%" else float(number)
 
 
 def _example(kind: type[Quantity]) -> str:

@@ -79,7 +79,11 @@ def parse_design(data: bytes | str, name: str = "design") -> Design:
     >>> parse_design(text).sections[0].f0
     3200.0
     """
-    table = _toml(data, name)
+    return check_design(_toml(data, name), name)
+
+
+def check_design(table: dict[str, Any], name: str = "design") -> Design:
+    """The design in a table such as `tomllib` gives; `name` stands for the file in messages."""
     reader = _Reader()
     design = reader.table(table, Design, _Place(f"{name}:"))
     if reader.faults or not isinstance(design, Design):

@@ -94,7 +94,7 @@ def _factored(num: FloatArray, den: FloatArray) -> Sections:
     scaled_num, scaled_den = num * powers[len(den) - len(num) :], den * powers
     zeros, poles = (np.asarray(np.roots(c) * scale, dtype=np.complex128) for c in (scaled_num, scaled_den))
     sections = sections_of_roots(zeros, poles, float(num[0] / den[0]))
-    w = scale * np.logspace(-3.0, 3.0, 61)
+    w = np.multiply.outer([0.5, 1.0, 2.0], np.abs(np.concatenate([poles, zeros[zeros != 0.0]]))).ravel()
     given = np.polyval(scaled_num, 1j * w / scale) / np.polyval(scaled_den, 1j * w / scale)
     worst = float(np.max(np.abs(chain_response(sections.b, sections.a, w / (2.0 * np.pi)) / given - 1.0)))
     if not worst < 1e-9:
