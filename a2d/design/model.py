@@ -8,6 +8,7 @@ import msgspec
 
 from a2d.design import hardware, kinds  # noqa: F401  (they register the sorts of section)
 from a2d.design.c_words import C_WORDS
+from a2d.design.firmware import Firmware
 from a2d.design.quantities import Degree, Hertz, PositiveDecibel, SampleRate, Seconds
 from a2d.design.section import MethodName, Section
 from a2d.design.structs import DesignStruct
@@ -54,6 +55,7 @@ class Design(DesignStruct, frozen=True, kw_only=True):
     design: DesignTable
     sections: tuple[Section, ...] = msgspec.field(name="section")
     limits: Limits | None = None
+    firmware: Firmware = Firmware()
 
     def __post_init__(self) -> None:
         if not self.sections:

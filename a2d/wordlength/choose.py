@@ -1,0 +1,134 @@
+"""One cascade in the design's number format: rounded, proved stable, or refused with what would carry it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from a2d.arrays import BoolArray, FloatArray
+from a2d.digital.twin import Twin
+from a2d.errors import RoundingError
+from a2d.wordlength.deviation import deviation_db
+from a2d.wordlength.formats import Number
+from a2d.wordlength.neighbours import round_together
+from a2d.wordlength.rounding import Rounded, round_nearest
+from a2d.wordlength.stability import is_stable, margin_to_circle
+from a2d.wordlength.structures import STRUCTURES, TITLES
+
+UNHEARD_DB = 1e-4  # nearest rounding is left alone below this: nothing is left to gain by a search
+ACCEPTED_DB = 0.01  # what a format or structure may move the response to be advised
+REFUSED_DB = 1.0  # a stable neighbour of an unstable rounding is no rounding of the design when it is further off
+
+
+@dataclass(frozen=True, eq=False)
+class Proof:
+    """A rounded cascade and what was found about it.
+
+    Attributes
+    ----------
+    rounded
+        The numbers.
+    nearest_db, error_db
+        The largest level change by rounding each coefficient alone, and by the numbers chosen.
+    margin
+        1 - |p| of the outermost pole; above zero, for what is unstable is refused.
+    exact_margin
+        The same before rounding.
+    """
+
+    rounded: Rounded
+    nearest_db: float
+    error_db: float
+    margin: float
+    exact_margin: float
+
+
+def rounding_band_hz(sos: FloatArray, rate_hz: float, band_hz: tuple[float, float]) -> tuple[float, float]:
+    """The band to judge rounding in, Hz: the design's, extended to half the lowest pole frequency.
+
+    Rounding moves a low section's peak out of the audible band or into it; only a look below the band sees both.
+    """
+    angle = pole_angles(sos)
+    lowest = float(np.min(angle, initial=np.pi, where=angle > 0.0)) * rate_hz / (2.0 * np.pi)
+    return min(band_hz[0], max(0.5 * lowest, 1.0)), band_hz[1]
+
+
+def pole_angles(sos: FloatArray) -> FloatArray:
+    """The angle of each section's upper pole in radians; 0 for real poles. `sos` [..., 6] -> [...]."""
+    a1, a2 = sos[..., 4], sos[..., 5]
+    return np.asarray(np.arctan2(np.sqrt(np.maximum(4.0 * a2 - a1 * a1, 0.0)), -a1) * (4.0 * a2 > a1 * a1))
+
+
+def prove(twin: Twin, number: Number, structure: str, *, together: bool, band_hz: tuple[float, float]) -> Proof:
+    """Round a twin and prove the result.
+
+    Raises
+    ------
+    RoundingError
+        It is unstable after rounding, or does not fit; the message says what carries it.
+    """
+    band = rounding_band_hz(twin.sos, twin.sample_rate_hz, band_hz)
+    try:
+        return _prove(twin.sos, twin.names, number, structure, twin.sample_rate_hz, band, together)
+    except RoundingError as error:
+        advice = alternatives(twin, number, structure, band)
+        raise RoundingError(f"at {twin.sample_rate_hz:g} Hz {error}; {advice}") from None
+
+
+def _prove(
+    sos: FloatArray,
+    names: tuple[str, ...],
+    number: Number,
+    structure: str,
+    rate_hz: float,
+    band_hz: tuple[float, float],
+    together: bool,
+) -> Proof:
+    rounded = round_nearest(sos, number, structure)
+    stable = is_stable(rounded.values, structure)
+    nearest_db = deviation_db(sos, rounded.sos, rate_hz, band_hz) if np.all(stable) else np.inf
+    error_db = nearest_db
+    if together and nearest_db > UNHEARD_DB:
+        searched = round_together(rounded, sos, rate_hz, band_hz)
+        searched_db = deviation_db(sos, searched.sos, rate_hz, band_hz)
+        if searched_db < nearest_db:
+            rounded, error_db = searched, searched_db
+    _refuse_unstable(rounded, stable, error_db, names)
+    margins = margin_to_circle(rounded.sections)
+    return Proof(rounded, nearest_db, error_db, float(np.min(margins)), float(np.min(margin_to_circle(sos))))
+
+
+def _refuse_unstable(rounded: Rounded, stable: BoolArray, error_db: float, names: tuple[str, ...]) -> None:
+    if np.all(stable) or (np.all(is_stable(rounded.values, rounded.structure)) and error_db < REFUSED_DB):
+        return
+    bad = int(np.flatnonzero(~stable)[0])
+    raise RoundingError(
+        f'section "{names[bad]}" is unstable in {rounded.number}, {TITLES[rounded.structure]}: '
+        f"rounding puts a pole on or outside the unit circle"
+    )
+
+
+def alternatives(twin: Twin, number: Number, structure: str, band_hz: tuple[float, float]) -> str:
+    """Which structures and formats carry a twin, with the level error each leaves, in words."""
+    offers = []
+    for other_number, other_structure in _other_choices(number, structure):
+        try:
+            proof = _prove(
+                twin.sos, twin.names, other_number, other_structure, twin.sample_rate_hz, band_hz, together=True
+            )
+        except RoundingError:
+            continue
+        if proof.error_db <= ACCEPTED_DB:
+            offers.append(f"{other_number} in {TITLES[other_structure]} ({proof.error_db:.2g} dB)")
+        if len(offers) == 3:
+            break
+    return "what carries it: " + ", ".join(offers) if offers else "no format here carries it"
+
+
+def _other_choices(number: Number, structure: str) -> list[tuple[Number, str]]:
+    """Cheaper changes first: another structure, then wider words, then floating point."""
+    wider = [Number("fixed", bits, bits - 2) for bits in (24, 32) if number.kind == "fixed" and bits > number.bits]
+    numbers = [number, *wider, Number("float32"), Number("float64")]
+    choices = [(n, s) for n in numbers for s in (structure, *STRUCTURES)]
+    return [c for c in dict.fromkeys(choices) if c != (number, structure)]
