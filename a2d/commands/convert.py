@@ -41,7 +41,22 @@ def output_files(args: argparse.Namespace, source: DesignFile, conversion: Conve
         f"{name}.twin.json": manifest(conversion, source.sha256),
         f"{name}.sos.csv": sos_table(conversion),
     }
+    if args.plots:
+        files |= _plots(conversion)
     return files
+
+
+def _plots(conversion: Conversion) -> dict[str, bytes]:
+    from a2d.report.plots import plots  # matplotlib is loaded only when asked for
+
+    table, judged = conversion.design.design, conversion.judged
+    return plots(
+        conversion.chain,
+        [j.twin for j in judged],
+        [j.comparison for j in judged],
+        table.name,
+        table.title or table.name,
+    )
 
 
 def show(args: argparse.Namespace, conversion: Conversion, names: list[str]) -> None:

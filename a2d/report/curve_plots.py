@@ -10,17 +10,8 @@ from matplotlib.figure import Figure
 from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullLocator
 
 from a2d.compare.errors import Comparison, Worst
-from a2d.report.style import (
-    ANALOG,
-    FAINT_INK,
-    INK,
-    MARKERS,
-    Sheet,
-    frequency_axis,
-    hertz_with_unit,
-    rate_label,
-    twin_style,
-)
+from a2d.report.style import ANALOG, FAINT_INK, INK, MARKERS, Sheet, frequency_axis, twin_style
+from a2d.report.text import grouped, hertz_with_unit, rate_label, signed
 from a2d.report.traces import Curves, Traces
 
 DEEPEST_DB = 120.0  # of a magnitude plot, below its highest point
@@ -141,20 +132,6 @@ def _errors(axes: Axes, traces: Traces, quantity: str, worst: Sequence[Worst], u
             clip_on=False,
             zorder=4,
         )
-
-
-def signed(value: float) -> str:
-    """Three significant digits with a sign: +6.22, −0.00131."""
-    return f"{value:+.3g}".replace("-", "−")
-
-
-def grouped(value: float) -> str:
-    """Thousands set apart by a thin space, a real minus sign.
-
-    >>> grouped(25000.0), grouped(-0.5)
-    ('25\u202f000', '−0.5')
-    """
-    return f"{value:,.6g}".replace(",", "\u202f").replace("-", "−")
 
 
 def _magnitude_limits(axes: Axes, traces: Traces) -> None:

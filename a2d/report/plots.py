@@ -13,7 +13,8 @@ from a2d.digital.twin import Twin
 from a2d.report.curve_plots import draw_error, draw_group_delay, draw_magnitude, draw_phase
 from a2d.report.graphics import FORMATS
 from a2d.report.root_plot import draw_roots
-from a2d.report.style import FILE_SHEET, Sheet, drawing, plain
+from a2d.report.style import FILE_SHEET, Sheet, drawing
+from a2d.report.text import plain
 from a2d.report.traces import Traces, traces
 
 

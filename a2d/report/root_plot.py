@@ -12,18 +12,8 @@ from matplotlib.figure import Figure
 from a2d.arrays import ComplexArray
 from a2d.compare.errors import Comparison
 from a2d.report.roots import Roots, s_of_z
-from a2d.report.style import (
-    ANALOG,
-    FAINT_INK,
-    GRID,
-    INK,
-    Sheet,
-    hertz,
-    hertz_with_unit,
-    plain,
-    rate_label,
-    twin_color,
-)
+from a2d.report.style import ANALOG, FAINT_INK, GRID, INK, Sheet, twin_color
+from a2d.report.text import hertz, hertz_with_unit, plain, rate_label
 from a2d.report.traces import Traces
 
 Q_RAYS = (0.5, 0.707, 1.0, 2.0, 5.0)

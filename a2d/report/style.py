@@ -13,6 +13,7 @@ from matplotlib.axes import Axes
 from matplotlib.ticker import FixedFormatter, FixedLocator, MaxNLocator, NullFormatter
 
 from a2d.arrays import FloatArray
+from a2d.report.text import hertz
 
 PAPER = "#ffffff"
 INK = "#1f2328"
@@ -126,37 +127,6 @@ def _steps(low_hz: float, high_hz: float, digits: tuple[int, ...] | range) -> Fl
     return np.asarray(ticks[(ticks >= low_hz * (1.0 - slack)) & (ticks <= high_hz * (1.0 + slack))])
 
 
-def hertz(f_hz: float) -> str:
-    """A short label: 20, 50, 1k, 2.5k, 20k, 1M.
-
-    >>> [hertz(f) for f in (20.0, 0.5, 1000.0, 2500.0, 1e6)]
-    ['20', '0.5', '1k', '2.5k', '1M']
-    """
-    for factor, letter in ((1e6, "M"), (1e3, "k")):
-        if f_hz >= factor * (1.0 - 1e-9):
-            return f"{f_hz / factor:.4g}{letter}"
-    return f"{f_hz:.4g}"
-
-
-def hertz_with_unit(f_hz: float) -> str:
-    """A frequency to four digits with its unit.
-
-    >>> hertz_with_unit(17_683.2), hertz_with_unit(100.0)
-    ('17.68 kHz', '100 Hz')
-    """
-    text = hertz(f_hz)
-    return f"{text[:-1]} {text[-1]}Hz" if text[-1] in "kM" else f"{text} Hz"
-
-
-def rate_label(sample_rate_hz: float) -> str:
-    """A sample rate as people say it.
-
-    >>> rate_label(44100.0), rate_label(48000.0)
-    ('44.1 kHz', '48 kHz')
-    """
-    return f"{sample_rate_hz / 1e3:.6g} kHz"
-
-
 def twin_color(index: int) -> str:
     """The colour of the twin at the `index`-th rate."""
     return TWINS[index % len(TWINS)]
@@ -165,8 +135,3 @@ def twin_color(index: int) -> str:
 def twin_style(index: int) -> dict[str, Any]:
     """Colour and line pattern of the twin at the `index`-th rate; 30 different ones."""
     return {"color": twin_color(index), "linestyle": DASHES[index % len(DASHES)]}
-
-
-def plain(text: str) -> str:
-    """`text` on one line, with whatever cannot be printed shown as a replacement sign."""
-    return "".join(c if c.isprintable() else "\ufffd" for c in " ".join(text.split()))

@@ -7,7 +7,8 @@ import itertools
 import numpy as np
 import pytest
 
-from a2d.report.style import ANALOG, DASHES, PAPER, TWINS, frequency_ticks, hertz, plain, twin_style
+from a2d.report.style import ANALOG, DASHES, PAPER, TWINS, frequency_ticks, twin_style
+from a2d.report.text import hertz, plain
 
 # Simulation of full protanopia, deuteranopia and tritanopia on linear RGB: G. M. Machado, M. M. Oliveira and
 # L. A. F. Fernandes, "A physiologically-based model for simulation of color vision deficiency", IEEE TVCG 15 (2009),
