@@ -94,7 +94,7 @@ class NullMeter:
         x, y = spectra
         self._reference += np.sum(_power(x), axis=0)
         self._other += np.sum(_power(y), axis=0)
-        self._difference += np.sum(_power(fft.rfft((frame[1] - frame[0]) * self._window, axis=-1)), axis=0)
+        self._difference += np.sum(_power(y - x), axis=0)
         self._cross += np.sum(np.conj(x) * y, axis=0)
         self._seen = True
 

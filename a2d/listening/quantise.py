@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
+import numpy.typing as npt
 
-from a2d.arrays import FloatArray, IntArray
+from a2d.arrays import FloatArray
 from a2d.errors import AudioError
 
 
@@ -42,19 +44,19 @@ ENCODINGS: dict[str, Encoding] = {
 }
 
 
-def triangular_dither(generator: np.random.Generator, shape: tuple[int, ...]) -> FloatArray:
+def triangular_dither(generator: np.random.Generator, shape: tuple[int, ...]) -> npt.NDArray[np.float32]:
     """The difference of two uniform numbers: triangular density from -1 to +1 step.
 
     Added before rounding it makes the error's mean and variance independent of the signal, the variance 1/4 step²
     (Wannamaker, Lipshitz, Vanderkooy, A theory of nonsubtractive dither, IEEE Trans. Signal Processing 48, 2000).
     """
-    raw = generator.integers(0, 2**32, size=(2, *shape), dtype=np.uint32)
-    return np.asarray(np.subtract(raw[0], raw[1], dtype=np.float64) * 2.0**-32)
+    uniform = generator.random((2, *shape), dtype=np.float32)
+    return np.asarray(uniform[0] - uniform[1])
 
 
 def to_steps(
-    samples: FloatArray, encoding: Encoding, dither: Callable[[tuple[int, ...]], FloatArray]
-) -> tuple[IntArray, int]:
+    samples: FloatArray, encoding: Encoding, dither: Callable[[tuple[int, ...]], npt.NDArray[Any]]
+) -> tuple[npt.NDArray[np.int32], int]:
     """Whole steps of a PCM encoding, and how many samples did not fit.
 
     Parameters
@@ -70,19 +72,25 @@ def to_steps(
     -------
     Steps of the same shape, held at the ends of the range and never wrapped, and the number of those held.
     """
-    scaled = samples * encoding.full_scale
+    steps = samples * encoding.full_scale
     if encoding.dithered:
-        scaled = scaled + dither(samples.shape)
-    steps = np.rint(scaled)
+        steps += dither(samples.shape)
+    np.rint(steps, out=steps)
     low, high = -encoding.full_scale, encoding.full_scale - 1.0
-    overs = int(np.count_nonzero(steps < low)) + int(np.count_nonzero(steps > high))
-    return np.clip(steps, low, high).astype(np.int64), overs
+    overs = 0
+    if steps.size and (steps.min() < low or steps.max() > high):
+        overs = int(np.count_nonzero(steps < low)) + int(np.count_nonzero(steps > high))
+        np.clip(steps, low, high, out=steps)
+    return steps.astype(np.int32, order="C"), overs
 
 
-def refuse_non_numbers(samples: FloatArray, first_frame: int) -> None:
-    """An error for NaN and infinity: a file must not carry them, and rounding would make a sample of them."""
-    good = np.isfinite(samples)
-    if not good.all():
-        frame = first_frame + int(np.argwhere(~good)[0][0])
-        value = samples[~good][0]
+def peak_of(samples: FloatArray, first_frame: int) -> float:
+    """The largest modulus; an error for NaN and infinity, which a file must not carry."""
+    if not samples.size:
+        return 0.0
+    peak = max(float(samples.max()), -float(samples.min()))
+    if not np.isfinite(peak):
+        bad = ~np.isfinite(samples)
+        frame, value = first_frame + int(np.argwhere(bad)[0][0]), samples[bad][0]
         raise AudioError(f"sample {frame} is not a finite number ({value}); nothing was written")
+    return peak

@@ -180,6 +180,8 @@ def _write(
             for name, (version, gain) in wanted.items():
                 block = versions[version] if gain == 1.0 else versions[version] * gain
                 writers[name].write(block.T)
+        for writer in writers.values():  # all of them, before the first appears under its name
+            writer.settle()
     return tuple(writer.written for writer in writers.values())
 
 

@@ -4,20 +4,23 @@ from __future__ import annotations
 
 import os
 from collections.abc import Iterator
+from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import dataclass
 from functools import partial
 from pathlib import Path
 from types import TracebackType
 
 import numpy as np
+import numpy.typing as npt
 import soundfile
 
 from a2d.arrays import FloatArray
 from a2d.errors import AudioError, FileError
-from a2d.listening.quantise import ENCODINGS, refuse_non_numbers, to_steps, triangular_dither
+from a2d.listening.quantise import ENCODINGS, peak_of, to_steps, triangular_dither
 
-BLOCK_FRAMES = 65_536
+BLOCK_FRAMES = 16_384  # a stereo block fits a core's own cache
 CONTAINERS = {".wav": "WAV", ".flac": "FLAC"}
+EXACT_IN_FLOAT32 = ("PCM_16", "PCM_24", "PCM_S8", "PCM_U8", "FLOAT")  # 24 bits of significand; read quicker
 LARGEST_WAV_BYTES = 4_000_000_000  # a WAV's length field has 32 bits; RF64 (EBU Tech 3306) is written beyond
 
 
@@ -69,16 +72,26 @@ def read_blocks(path: Path, frames: int = BLOCK_FRAMES) -> Iterator[FloatArray]:
     FileError
         It cannot be read, or is no audio file.
     """
+    with ThreadPoolExecutor(1) as reader:  # one block ahead: the file is decoded while the last block is filtered
+        blocks = _decoded(path, frames)
+        following = reader.submit(next, blocks, None)
+        while (block := following.result()) is not None:
+            following = reader.submit(next, blocks, None)
+            yield block
+
+
+def _decoded(path: Path, frames: int) -> Iterator[FloatArray]:
     at = 0
     with _opened(path) as source:
+        kept = "float32" if source.subtype in EXACT_IN_FLOAT32 else "float64"
         while True:
-            block = source.read(frames, dtype="float64", always_2d=True)
+            block = source.read(frames, dtype=kept, always_2d=True)
             if not len(block):
                 return
             if not np.isfinite(block).all():
                 raise AudioError(f"{path} holds a sample that is not a finite number (near sample {at})")
             at += len(block)
-            yield block
+            yield block.astype(np.float64, order="F")  # each channel in one piece, as the filters want it
 
 
 def read_audio(path: Path) -> tuple[FloatArray, float]:
@@ -139,6 +152,8 @@ class AudioWriter:
         self.path, self.encoding = path, ENCODINGS[encoding]
         self._dither = partial(triangular_dither, np.random.Generator(np.random.SFC64(seed)))
         self._frames, self._overs, self._peak, self._channels = 0, 0, 0.0, channels
+        self._worker = ThreadPoolExecutor(1)  # rounds and stores one block while the next is made
+        self._pending: Future[None] | None = None
         self._part = path.with_name(f".{path.name}.part")
         container = self._container(expected_frames * channels * (self.encoding.bits or 32) // 8)
         rate = _whole_rate(sample_rate_hz)
@@ -158,18 +173,35 @@ class AudioWriter:
         return "RF64" if suffix == ".wav" and data_bytes > LARGEST_WAV_BYTES else CONTAINERS[suffix]
 
     def write(self, block: FloatArray) -> None:
-        """Append `block` [n, channels]; NaN and infinity are refused, overs counted."""
-        refuse_non_numbers(block, self._frames)
-        if block.size:
-            self._peak = max(self._peak, float(np.max(block)), -float(np.min(block)))
+        """Append `block` [n, channels], which must not change any more; NaN and infinity are refused, overs counted.
+
+        An error may come with the next block or at the end.
+        """
+        self.settle()
+        self._pending = self._worker.submit(self._take, block)
+
+    def settle(self) -> None:
+        """Wait for the last block, and raise what went wrong with it."""
+        if self._pending is not None:
+            self._pending.result()
+
+    def _take(self, block: FloatArray) -> None:
+        peak = peak_of(block, self._frames)
+        self._peak = max(self._peak, peak)
         self._frames += len(block)
         if not self.encoding.bits:
-            self._overs += int(np.count_nonzero(np.abs(block) > 1.0)) if self._peak > 1.0 else 0
-            self._file.write(block.astype(np.float32))
+            self._overs += int(np.count_nonzero(np.abs(block) > 1.0)) if peak > 1.0 else 0
+            self._store(block.astype(np.float32))
             return
         steps, overs = to_steps(block, self.encoding, self._dither)
         self._overs += overs
-        self._file.write((steps << (32 - self.encoding.bits)).astype(np.int32))
+        self._store(steps << (32 - self.encoding.bits))
+
+    def _store(self, values: npt.NDArray[np.float32] | npt.NDArray[np.int32]) -> None:
+        try:
+            self._file.write(values)
+        except soundfile.LibsndfileError as error:
+            raise FileError(f"{self.path} cannot be written ({error.error_string})") from None
 
     @property
     def written(self) -> Written:
@@ -181,12 +213,19 @@ class AudioWriter:
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
-        self._file.close()
-        if kind is not None:
-            self._part.unlink(missing_ok=True)
-            return
-        _blank_time_stamp(self._part)
-        os.replace(self._part, self.path)
+        complete = False
+        try:
+            if kind is None:
+                self.settle()
+                complete = True
+        finally:
+            self._worker.shutdown()
+            self._file.close()
+            if complete:
+                _blank_time_stamp(self._part)
+                os.replace(self._part, self.path)
+            else:
+                self._part.unlink(missing_ok=True)
 
 
 def _whole_rate(sample_rate_hz: float) -> int:
