@@ -29,14 +29,15 @@ class Sections(NamedTuple):
 
 
 def single(
-    b: tuple[ArrayLike, ArrayLike, ArrayLike], a: tuple[ArrayLike, ArrayLike, ArrayLike], w0: FloatArray
+    b: tuple[ArrayLike, ArrayLike, ArrayLike], a: tuple[ArrayLike, ArrayLike, ArrayLike], f0_hz: FloatArray
 ) -> Sections:
-    """One section from coefficients in s normalised to `w0` (rad/s); all broadcast together to [...]."""
-    b2, b1, b0, a2, a1, a0, w = np.broadcast_arrays(*b, *a, w0)
+    """One section from coefficients in s normalised to `f0_hz`; all broadcast together to [...]."""
+    b2, b1, b0, a2, a1, a0, f0 = np.broadcast_arrays(*b, *a, f0_hz)
+    w = 2.0 * np.pi * f0
     powers = np.stack([1.0 / w**2, 1.0 / w, np.ones_like(w)], axis=-1)
     rows_b = np.stack([b2, b1, b0], axis=-1) * powers
     rows_a = np.stack([a2, a1, a0], axis=-1) * powers
-    return Sections(rows_b[..., np.newaxis, :], rows_a[..., np.newaxis, :], (w / (2.0 * np.pi))[..., np.newaxis])
+    return Sections(rows_b[..., np.newaxis, :], rows_a[..., np.newaxis, :], f0[..., np.newaxis].astype(np.float64))
 
 
 def scaled(sections: Sections, factor: ArrayLike) -> Sections:

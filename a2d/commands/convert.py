@@ -6,11 +6,13 @@ import argparse
 import sys
 
 from a2d.commands import summary
+from a2d.commands.delivery import delivery_of
 from a2d.commands.options import add_design, add_out
 from a2d.commands.terminal import console
 from a2d.conversion import Conversion, convert
 from a2d.design.read import DesignFile, read_design_file
 from a2d.files import write_all
+from a2d.firmware.deliver import Delivery
 from a2d.firmware.manifest import manifest, sos_table
 
 HELP = "make the digital twin of a design: table, C header, manifest; plots, report and sound on request"
@@ -28,16 +30,20 @@ def run(args: argparse.Namespace) -> int:
     """Convert, show, write; 1 when a limit is broken."""
     source = read_design_file(args.design)
     conversion = convert(source.design)
-    files = output_files(args, source, conversion)
+    delivery = delivery_of(conversion, source.sha256)
+    files = output_files(args, source, conversion, delivery)
     write_all(args.out, files)
-    show(args, conversion, list(files))
-    return report_breaches(conversion)
+    show(args, conversion, delivery, list(files))
+    return report_breaches(conversion, delivery)
 
 
-def output_files(args: argparse.Namespace, source: DesignFile, conversion: Conversion) -> dict[str, bytes | str]:
+def output_files(
+    args: argparse.Namespace, source: DesignFile, conversion: Conversion, delivery: Delivery
+) -> dict[str, bytes | str]:
     """Everything that goes to the output folder, by file name."""
     name = source.design.design.name
     files: dict[str, bytes | str] = {
+        **delivery.files,
         f"{name}.twin.json": manifest(conversion, source.sha256),
         f"{name}.sos.csv": sos_table(conversion),
     }
@@ -59,7 +65,7 @@ def _plots(conversion: Conversion) -> dict[str, bytes]:
     )
 
 
-def show(args: argparse.Namespace, conversion: Conversion, names: list[str]) -> None:
+def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:
     """The tables and notes on the terminal."""
     out = console()
     table = conversion.design.design
@@ -73,12 +79,20 @@ def show(args: argparse.Namespace, conversion: Conversion, names: list[str]) -> 
     out.print(summary.errors_table(conversion))
     for note in summary.notes(conversion):
         out.print(f"- {note}")
+    out.print("Firmware", style="bold")
+    for line in delivery.lines:
+        out.print(f"- {line}")
     out.print(f"Written to {args.out}: {', '.join(names)}")
 
 
-def report_breaches(conversion: Conversion) -> int:
-    """Say each broken limit on standard error; the exit status."""
-    for judged in conversion.judged:
-        for breach in judged.breaches:
-            print(f"a2d convert: limit broken at {judged.twin.sample_rate_hz:g} Hz: {breach}", file=sys.stderr)
-    return 0 if conversion.within_limits else 1
+def report_breaches(conversion: Conversion, delivery: Delivery) -> int:
+    """Say each broken limit and each warning on standard error; the exit status."""
+    for warning in delivery.warnings:
+        print(f"a2d convert: {warning}", file=sys.stderr)
+    within = True
+    for judged, rounded in zip(conversion.judged, delivery.breaches, strict=True):
+        for breach in judged.breaches or rounded:
+            within = False
+            after = "" if judged.breaches else " after rounding"
+            print(f"a2d convert: limit broken{after} at {judged.twin.sample_rate_hz:g} Hz: {breach}", file=sys.stderr)
+    return 0 if within else 1

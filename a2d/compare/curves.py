@@ -7,6 +7,7 @@ import numpy as np
 from a2d.analog import response as analog
 from a2d.arrays import ComplexArray, FloatArray
 from a2d.digital import response as digital
+from a2d.digital.response import unit_delay_complement
 
 FLOOR_DB = 100.0  # below the analog response's maximum in the band
 
@@ -16,7 +17,7 @@ MAGNITUDE, PHASE, GROUP_DELAY = range(3)
 def error_curves(
     b: FloatArray, a: FloatArray, sos: FloatArray, sample_rate_hz: float, f_hz: FloatArray, peak: FloatArray
 ) -> FloatArray:
-    """Magnitude error in dB, phase error in degrees (-180 to 180) and group-delay error in µs, digital minus analog.
+    """Magnitude error in dB, phase error in degrees and group-delay error in µs, digital minus analog.
 
     Parameters
     ----------
@@ -41,29 +42,28 @@ def error_curves(
     where either does phase and group delay are not judged (zero error). A notch whose bottom is reached at the same
     frequency by both thus has a finite error, and one that misses it is charged with up to `FLOOR_DB`.
     """
-    h_a, delay_a = _analog(b, a, f_hz)
-    h_d, delay_d = _digital(sos, f_hz, sample_rate_hz)
+    w, u = 2.0 * np.pi * f_hz[..., np.newaxis, :], unit_delay_complement(f_hz[..., np.newaxis, :], sample_rate_hz)
+    sections_a = analog.polynomial(b, w) / analog.polynomial(a, w)
+    sections_d = digital.polynomial(sos[..., :3], u) / digital.polynomial(sos[..., 3:], u)
     floor = peak[..., np.newaxis] * 10.0 ** (-FLOOR_DB / 20.0)
-    size_a, size_d = np.abs(h_a), np.abs(h_d)
+    size_a, size_d = (np.abs(np.prod(h, axis=-2)) for h in (sections_a, sections_d))
     audible = (size_a > floor) & (size_d > floor)
     magnitude = 20.0 * np.log10(np.maximum(size_d, floor) / np.maximum(size_a, floor))
-    phase = np.degrees(np.angle(h_d * np.conj(h_a)))
-    delay = 1e6 * (delay_d - delay_a)
+    phase = _phase_error(sections_a, sections_d)
+    delay_a = np.sum(analog.phase_slope(a, w) - analog.phase_slope(b, w), axis=-2)
+    samples = np.sum(digital.delay_in_samples(sos[..., :3], u) - digital.delay_in_samples(sos[..., 3:], u), axis=-2)
+    delay = 1e6 * (samples / sample_rate_hz - delay_a)
     return np.stack([magnitude, np.where(audible, phase, 0.0), np.where(audible, delay, 0.0)])
 
 
-def _analog(b: FloatArray, a: FloatArray, f_hz: FloatArray) -> tuple[ComplexArray, FloatArray]:
-    f = f_hz[..., np.newaxis, :]
-    w = 2.0 * np.pi * f
-    delay = np.sum(analog.phase_slope(a, w) - analog.phase_slope(b, w), axis=-2)
-    return np.prod(analog.polynomial(b, w) / analog.polynomial(a, w), axis=-2), delay
-
-
-def _digital(sos: FloatArray, f_hz: FloatArray, sample_rate_hz: float) -> tuple[ComplexArray, FloatArray]:
-    u = digital.unit_delay_complement(f_hz[..., np.newaxis, :], sample_rate_hz)
-    b, a = sos[..., :3], sos[..., 3:]
-    samples = np.sum(digital.delay_in_samples(b, u) - digital.delay_in_samples(a, u), axis=-2)
-    return np.prod(digital.polynomial(b, u) / digital.polynomial(a, u), axis=-2), samples / sample_rate_hz
+def _phase_error(analog_sections: ComplexArray, digital_sections: ComplexArray) -> FloatArray:
+    """Phase of digital re analog in degrees: the sum over sections, which has no jumps of 360 degrees; where the two
+    have different numbers of sections, of the products, from -180 to 180.
+    """
+    if analog_sections.shape[-2] == digital_sections.shape[-2]:
+        return np.asarray(np.sum(np.degrees(np.angle(digital_sections * np.conj(analog_sections))), axis=-2))
+    products = np.prod(digital_sections, axis=-2) * np.conj(np.prod(analog_sections, axis=-2))
+    return np.asarray(np.degrees(np.angle(products)))
 
 
 def largest_magnitude(b: FloatArray, a: FloatArray, f_hz: FloatArray) -> FloatArray:

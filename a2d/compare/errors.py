@@ -104,7 +104,8 @@ def _compare(
     f = frequency_grid(b.reshape(-1, 3), a.reshape(-1, 3), band)
     peak = largest_magnitude(b, a, f)
     on_grid = error_curves(b, a, sos, rate, f, peak)
-    unwrapped = np.unwrap(on_grid[PHASE], period=360.0, axis=-1)
+    jumps = b.shape[-2] != sos.shape[-2]  # see `curves`: only then the phase is known to 360 degrees alone
+    unwrapped = np.unwrap(on_grid[PHASE], period=360.0, axis=-1) if jumps else on_grid[PHASE]
     delay = best_delay(f, unwrapped)
     residual = unwrapped + 360.0 * f * delay[:, np.newaxis]
     values = np.concatenate([on_grid[:PHASE], unwrapped[np.newaxis], on_grid[PHASE + 1 :], residual[np.newaxis]])
@@ -115,7 +116,7 @@ def _compare(
         for row in range(4):
             source = row if row < 3 else PHASE
             out[row] = error_curves(b, a, sos, rate, at[row], peak)[source]
-        for row in (PHASE, 3):
+        for row in (PHASE, 3) if jumps else ():
             near = np.stack([np.interp(at[row, n], f, unwrapped[n]) for n in range(len(b))])
             out[row] += 360.0 * np.round((near - out[row]) / 360.0)
         out[3] += 360.0 * at[3] * delay[:, np.newaxis]

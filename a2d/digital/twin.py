@@ -52,7 +52,8 @@ class Twin:
 
 def default_band_hz(sample_rate_hz: ArrayLike) -> FloatArray:
     """20 Hz to 20 kHz, or to 0.4535 of the sample rate where that is lower; shape [..., 2]."""
-    top = np.minimum(WIDEST_BAND_HZ[1], HIGHEST_BAND_FRACTION * np.asarray(sample_rate_hz, dtype=np.float64))
+    rate = np.asarray(sample_rate_hz, dtype=np.float64)
+    top = np.minimum(WIDEST_BAND_HZ[1], np.round(HIGHEST_BAND_FRACTION * rate, 3))
     return np.stack([np.broadcast_to(WIDEST_BAND_HZ[0], top.shape), top], axis=-1)
 
 

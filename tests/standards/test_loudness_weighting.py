@@ -27,7 +27,7 @@ def twin(sections: tuple[FloatArray, FloatArray, FloatArray], f0: float, rate: f
 
 def stage_1(rate: float) -> FloatArray:
     vh = 10.0 ** (GAIN_DB / 20.0)
-    shelf = single((vh, vh**VB_EXPONENT / Q1, 1.0), (1.0, 1.0 / Q1, 1.0), np.asarray(2 * np.pi * F1))
+    shelf = single((vh, vh**VB_EXPONENT / Q1, 1.0), (1.0, 1.0 / Q1, 1.0), np.asarray(F1))
     return twin(shelf, F1, rate)
 
 

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from a2d import checks
-from a2d.analog.kinds.filters import angular, pole_q
+from a2d.analog.kinds.filters import frequency, pole_q
 from a2d.analog.sections import Sections, amplitude, single
 from a2d.arrays import ArrayLike, FloatArray
 
@@ -27,7 +27,7 @@ def peaking(f0: ArrayLike, q: ArrayLike, gain_db: ArrayLike, *, q_meaning: str =
     """
     own = W3C_Q[q_meaning](pole_q(q), amplitude(gain_db))
     a = np.sqrt(amplitude(gain_db))
-    return single((1.0, a / own, 1.0), (1.0, 1.0 / (a * own), 1.0), angular(f0))
+    return single((1.0, a / own, 1.0), (1.0, 1.0 / (a * own), 1.0), frequency(f0))
 
 
 def w3c_q_of_bandwidth(octaves: ArrayLike, gain_db: ArrayLike, at: str = "half_gain") -> FloatArray:
@@ -94,17 +94,17 @@ def shelf_q_of_slope(slope: ArrayLike, gain_db: ArrayLike) -> FloatArray:
 
 def low_shelf(f0: ArrayLike, gain_db: ArrayLike, q: ArrayLike | None = None) -> Sections:
     """H(s) = A·(s² + s·√A/Q + A)/(A·s² + s·√A/Q + 1); first order, without q: H(s) = (s + A)/(s + 1/A)."""
-    a, w0 = np.sqrt(amplitude(gain_db)), angular(f0)
+    a, f = np.sqrt(amplitude(gain_db)), frequency(f0)
     if q is None:
-        return single((0.0, 1.0, a), (0.0, 1.0, 1.0 / a), w0)
+        return single((0.0, 1.0, a), (0.0, 1.0, 1.0 / a), f)
     middle = np.sqrt(a) / pole_q(q)
-    return single((a, a * middle, a * a), (a, middle, 1.0), w0)
+    return single((a, a * middle, a * a), (a, middle, 1.0), f)
 
 
 def high_shelf(f0: ArrayLike, gain_db: ArrayLike, q: ArrayLike | None = None) -> Sections:
     """H(s) = A·(A·s² + s·√A/Q + 1)/(s² + s·√A/Q + A); first order, without q: H(s) = (A·s + 1)/(s/A + 1)."""
-    a, w0 = np.sqrt(amplitude(gain_db)), angular(f0)
+    a, f = np.sqrt(amplitude(gain_db)), frequency(f0)
     if q is None:
-        return single((0.0, a, 1.0), (0.0, 1.0 / a, 1.0), w0)
+        return single((0.0, a, 1.0), (0.0, 1.0 / a, 1.0), f)
     middle = np.sqrt(a) / pole_q(q)
-    return single((a * a, a * middle, a), (1.0, middle, a), w0)
+    return single((a * a, a * middle, a), (1.0, middle, a), f)

@@ -15,54 +15,54 @@ from a2d.arrays import ArrayLike, FloatArray
 
 def gain(gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = G. A plain gain, without any frequency response."""
-    return single((0.0, 0.0, amplitude(gain_db)), (0.0, 0.0, 1.0), np.asarray(2.0 * np.pi * 1000.0))
+    return single((0.0, 0.0, amplitude(gain_db)), (0.0, 0.0, 1.0), np.asarray(1000.0))
 
 
 def lowpass(f0: ArrayLike, q: ArrayLike | None = None, gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = G/(s² + s/Q + 1); first order, without q: H(s) = G/(s + 1)."""
-    g, w0 = amplitude(gain_db), angular(f0)
+    g, f = amplitude(gain_db), frequency(f0)
     if q is None:
-        return single((0.0, 0.0, g), (0.0, 1.0, 1.0), w0)
-    return single((0.0, 0.0, g), (1.0, 1.0 / pole_q(q), 1.0), w0)
+        return single((0.0, 0.0, g), (0.0, 1.0, 1.0), f)
+    return single((0.0, 0.0, g), (1.0, 1.0 / pole_q(q), 1.0), f)
 
 
 def highpass(f0: ArrayLike, q: ArrayLike | None = None, gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = G·s²/(s² + s/Q + 1); first order, without q: H(s) = G·s/(s + 1)."""
-    g, w0 = amplitude(gain_db), angular(f0)
+    g, f = amplitude(gain_db), frequency(f0)
     if q is None:
-        return single((0.0, g, 0.0), (0.0, 1.0, 1.0), w0)
-    return single((g, 0.0, 0.0), (1.0, 1.0 / pole_q(q), 1.0), w0)
+        return single((0.0, g, 0.0), (0.0, 1.0, 1.0), f)
+    return single((g, 0.0, 0.0), (1.0, 1.0 / pole_q(q), 1.0), f)
 
 
 def allpass(f0: ArrayLike, q: ArrayLike | None = None, gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = G·(s² - s/Q + 1)/(s² + s/Q + 1); first order, without q: H(s) = G·(1 - s)/(1 + s)."""
-    g, w0 = amplitude(gain_db), angular(f0)
+    g, f = amplitude(gain_db), frequency(f0)
     if q is None:
-        return single((0.0, -g, g), (0.0, 1.0, 1.0), w0)
+        return single((0.0, -g, g), (0.0, 1.0, 1.0), f)
     damping = 1.0 / pole_q(q)
-    return single((g, -g * damping, g), (1.0, damping, 1.0), w0)
+    return single((g, -g * damping, g), (1.0, damping, 1.0), f)
 
 
 def bandpass(f0: ArrayLike, q: ArrayLike, gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = H0·(s/Q)/(s² + s/Q + 1): the peak is H0 (the gain) at any Q."""
     damping = 1.0 / pole_q(q)
-    return single((0.0, amplitude(gain_db) * damping, 0.0), (1.0, damping, 1.0), angular(f0))
+    return single((0.0, amplitude(gain_db) * damping, 0.0), (1.0, damping, 1.0), frequency(f0))
 
 
 def bandpass_constant_skirt(f0: ArrayLike, q: ArrayLike, gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = G·s/(s² + s/Q + 1): the skirts stay in place as Q changes; the peak is G·Q."""
-    return single((0.0, amplitude(gain_db), 0.0), (1.0, 1.0 / pole_q(q), 1.0), angular(f0))
+    return single((0.0, amplitude(gain_db), 0.0), (1.0, 1.0 / pole_q(q), 1.0), frequency(f0))
 
 
 def notch(f0: ArrayLike, q: ArrayLike, gain_db: ArrayLike = 0.0) -> Sections:
     """H(s) = G·(s² + 1)/(s² + s/Q + 1): nothing passes at f0."""
     g = amplitude(gain_db)
-    return single((g, 0.0, g), (1.0, 1.0 / pole_q(q), 1.0), angular(f0))
+    return single((g, 0.0, g), (1.0, 1.0 / pole_q(q), 1.0), frequency(f0))
 
 
-def angular(f0: ArrayLike) -> FloatArray:
-    """2π·f0 of a checked frequency, rad/s."""
-    return np.asarray(2.0 * np.pi * checks.positive("f0", f0, "Hz"))
+def frequency(f0: ArrayLike) -> FloatArray:
+    """A checked f0, Hz."""
+    return checks.positive("f0", f0, "Hz")
 
 
 def pole_q(q: ArrayLike) -> FloatArray:
