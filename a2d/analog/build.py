@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 
-from a2d.analog.chain import AnalogChain
+from a2d.analog.chain import AnalogChain, numbered
 from a2d.analog.hardware import network_sections
 from a2d.analog.kinds import sections_of
 from a2d.analog.sections import Sections, scaled
@@ -39,7 +39,7 @@ def build_chain(design: Design) -> AnalogChain:
             faults.append(Fault(str(error), f'section "{section.name}"'))
             continue
         count = len(sections.f0_hz)
-        names += [section.name] if count == 1 else [f"{section.name}.{i + 1}" for i in range(count)]
+        names += numbered(section.name, count)
         owners += [index] * count
         built.append(sections)
     if faults:

@@ -8,7 +8,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from a2d import checks
+from a2d.analog.polynomials import polynomial_sections
 from a2d.analog.response import chain_response
+from a2d.analog.roots import sections_of_roots
+from a2d.analog.sections import Sections, natural_frequency_hz
 from a2d.arrays import ArrayLike, ComplexArray, FloatArray
 from a2d.errors import ParameterError
 
@@ -64,6 +67,43 @@ class AnalogChain:
         own = range(len(names)) if owners is None else owners
         return cls(tuple(names), b_array, a_array, f0_rows, tuple(own))
 
+    @classmethod
+    def from_zpk(cls, zeros: ArrayLike, poles: ArrayLike, gain: float, name: str = "section") -> AnalogChain:
+        """The chain of gain·Π(s - z)/Π(s - p), roots in rad/s, as scipy's analog designs give them (output "zpk").
+
+        Examples
+        --------
+        >>> chain = AnalogChain.from_zpk([], [-1000 + 1000j, -1000 - 1000j], 2e6)
+        >>> round(float(abs(chain.response(0.001)[0])), 6)
+        1.0
+        """
+        roots = (np.atleast_1d(np.asarray(r, dtype=np.complex128)) for r in (zeros, poles))
+        return cls._named(name, sections_of_roots(*roots, float(checks.finite("gain", gain))))
+
+    @classmethod
+    def from_ba(cls, b: ArrayLike, a: ArrayLike, name: str = "section") -> AnalogChain:
+        """The chain of Σ b·s^k/Σ a·s^k, falling powers of s in rad/s (scipy's output "ba"), factored and checked.
+
+        Examples
+        --------
+        >>> len(AnalogChain.from_ba([1.0], [1e-9, 3e-6, 3e-3, 1.0]))
+        2
+        """
+        return cls._named(name, polynomial_sections(b, a))
+
+    @classmethod
+    def from_sos(cls, sos: ArrayLike, names: Sequence[str] | None = None) -> AnalogChain:
+        """The chain of analog second-order sections [S, 6]: b2, b1, b0, a2, a1, a0 of s (scipy's output "sos")."""
+        rows = np.atleast_2d(checks.finite("sos", sos))
+        if rows.shape[-1] != 6:
+            raise ParameterError(f"sos must have the shape [S, 6] ({list(rows.shape)})")
+        own = [f"section.{i + 1}" for i in range(len(rows))] if names is None else names
+        return cls.of(own, rows[:, :3], rows[:, 3:])
+
+    @classmethod
+    def _named(cls, name: str, sections: Sections) -> AnalogChain:
+        return cls.of(numbered(name, len(sections.f0_hz)), sections.b, sections.a, sections.f0_hz)
+
     def response(self, f_hz: ArrayLike) -> ComplexArray:
         """H(j2πf) of the whole chain at `f_hz` [F] (Hz); complex, shape [F]."""
         return chain_response(self.b, self.a, np.atleast_1d(np.asarray(f_hz, dtype=np.float64)))
@@ -72,19 +112,6 @@ class AnalogChain:
         return len(self.names)
 
 
-def natural_frequency_hz(b: FloatArray, a: FloatArray) -> FloatArray:
-    """The characteristic frequency of each section `b`, `a` [..., 3], in Hz, shape [...].
-
-    |p| of the poles: sqrt(a0/a2) for two, a0/a1 for one; where the poles say nothing (a plain gain), that of the
-    zeros; where neither does, 1 kHz.
-    """
-
-    def modulus(c: FloatArray) -> FloatArray:
-        with np.errstate(divide="ignore", invalid="ignore"):
-            two = np.sqrt(np.abs(c[..., 2] / c[..., 0]))
-            one = np.abs(c[..., 2] / c[..., 1])
-        return np.where(c[..., 0] != 0.0, two, np.where(c[..., 1] != 0.0, one, 0.0))
-
-    poles, zeros = modulus(a), modulus(b)
-    rad_s = np.where(poles > 0.0, poles, np.where(zeros > 0.0, zeros, 2.0 * np.pi * 1000.0))
-    return np.asarray(rad_s / (2.0 * np.pi))
+def numbered(name: str, count: int) -> list[str]:
+    """Names of the sections that one entry gave rise to: `name`, or `name.1`, `name.2`."""
+    return [name] if count == 1 else [f"{name}.{i + 1}" for i in range(count)]

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-from a2d.analog.chain import natural_frequency_hz
 from a2d.analog.network.solve import Solution, solve_network
-from a2d.analog.sections import Sections
+from a2d.analog.sections import Sections, natural_frequency_hz
 from a2d.design.hardware import NetworkSection
 
 

@@ -4,8 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from a2d.analog.chain import natural_frequency_hz
-from a2d.analog.sections import Sections
+from a2d.analog.sections import Sections, natural_frequency_hz
 from a2d.arrays import ComplexArray, FloatArray
 from a2d.errors import ParameterError
 

@@ -56,3 +56,21 @@ def normalised(sections: Sections, reference_hz: float, gain: float) -> Sections
 def amplitude(gain_db: ArrayLike) -> FloatArray:
     """10^(gain/20)."""
     return np.asarray(10.0 ** (np.asarray(gain_db, dtype=np.float64) / 20.0))
+
+
+def natural_frequency_hz(b: FloatArray, a: FloatArray) -> FloatArray:
+    """The characteristic frequency of each section `b`, `a` [..., 3], in Hz, shape [...].
+
+    |p| of the poles: sqrt(a0/a2) for two, a0/a1 for one; where the poles say nothing (a plain gain), that of the
+    zeros; where neither does, 1 kHz.
+    """
+
+    def modulus(c: FloatArray) -> FloatArray:
+        with np.errstate(divide="ignore", invalid="ignore"):
+            two = np.sqrt(np.abs(c[..., 2] / c[..., 0]))
+            one = np.abs(c[..., 2] / c[..., 1])
+        return np.where(c[..., 0] != 0.0, two, np.where(c[..., 1] != 0.0, one, 0.0))
+
+    poles, zeros = modulus(a), modulus(b)
+    rad_s = np.where(poles > 0.0, poles, np.where(zeros > 0.0, zeros, 2.0 * np.pi * 1000.0))
+    return np.asarray(rad_s / (2.0 * np.pi))

@@ -41,6 +41,22 @@ class Twin:
     sample_rate_hz: float
     match_hz: FloatArray
 
+    @classmethod
+    def from_sos(cls, sos: ArrayLike, sample_rate_hz: float, names: Sequence[str] | None = None) -> Twin:
+        """A twin from second-order sections made elsewhere, [S, 6] in scipy's order, to be compared or emitted.
+
+        Raises
+        ------
+        ParameterError
+            Another shape, a0 of zero, or numbers that are not finite.
+        """
+        rows = np.atleast_2d(checks.finite("sos", sos))
+        if rows.ndim != 2 or rows.shape[-1] != 6 or np.any(rows[:, 3] == 0.0):
+            raise ParameterError(f"sos must have the shape [S, 6] with a0 other than zero ({list(rows.shape)})")
+        own = tuple(names) if names is not None else tuple(f"section.{i + 1}" for i in range(len(rows)))
+        rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
+        return cls(own, ("given",) * len(rows), rows / rows[:, 3:4], rate, np.full(len(rows), np.nan))
+
     def response(self, f_hz: ArrayLike) -> ComplexArray:
         """H(e^{j2πf/fs}) of the whole twin at `f_hz` [F] (Hz); complex, shape [F]."""
         f = np.atleast_1d(np.asarray(f_hz, dtype=np.float64))

@@ -11,6 +11,7 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from a2d.analog.kinds import equalisers, filters, given, prototypes
+from a2d.analog.polynomials import polynomial_sections
 from a2d.analog.sections import Sections, amplitude
 from a2d.arrays import ComplexArray
 from a2d.design import kinds as design
@@ -86,7 +87,7 @@ def _pole_zero(p: design.PoleZero) -> Sections:
 
 
 def _polynomial(p: design.Polynomial) -> Sections:
-    sections = given.polynomial(p.b, p.a)
+    sections = polynomial_sections(p.b, p.a)
     return sections if p.f0 is None else sections._replace(f0_hz=np.full_like(sections.f0_hz, p.f0))
 
 
@@ -106,7 +107,7 @@ KINDS: dict[str, Kind] = {
     "chebyshev": Kind(_chebyshev, prototypes.chebyshev_poles),
     "time_constants": Kind(_time_constants, given.time_constants),
     "pole_zero": Kind(_pole_zero, given.pole_zero),
-    "polynomial": Kind(_polynomial, given.polynomial),
+    "polynomial": Kind(_polynomial, polynomial_sections),
 }
 
 
