@@ -1,1 +1,62 @@
-"""a2d: from an analog audio equaliser to its proven digital twin."""
+"""a2d: from an analog audio equaliser to its proven digital twin.
+
+    design = a2d.read_design("harbour_eq.toml")
+    conversion = a2d.convert(design)
+    sos = conversion.judged[0].twin.sos            # as scipy.signal.sosfilt takes it
+
+Everything that the commands do is here by name. What needs matplotlib, soundfile or scipy is loaded when it is used.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import Any
+
+from a2d.analog.build import build_chain
+from a2d.analog.chain import AnalogChain
+from a2d.analog.kinds import KINDS
+from a2d.compare.errors import Comparison, Worst, compare, compare_sections
+from a2d.compare.verdict import Breach, judge
+from a2d.conversion import Conversion, Judged, convert, convert_at
+from a2d.design.model import Design
+from a2d.design.read import parse_design, read_design
+from a2d.design.schema import design_schema
+from a2d.digital.methods import METHODS
+from a2d.digital.twin import Twin, make_twin
+from a2d.errors import A2dError
+
+_LATER = {
+    "plots": "a2d.report.plots",
+}
+
+
+def __getattr__(name: str) -> Any:
+    if name not in _LATER:
+        raise AttributeError(f"module 'a2d' has no attribute {name!r}")
+    return getattr(import_module(_LATER[name]), name)
+
+
+__all__ = [
+    "KINDS",
+    "METHODS",
+    "A2dError",
+    "AnalogChain",
+    "Breach",
+    "Comparison",
+    "Conversion",
+    "Design",
+    "Judged",
+    "Twin",
+    "Worst",
+    "build_chain",
+    "compare",
+    "compare_sections",
+    "convert",
+    "convert_at",
+    "design_schema",
+    "judge",
+    "make_twin",
+    "parse_design",
+    "plots",
+    "read_design",
+]

@@ -77,8 +77,8 @@ class AnalogChain:
         >>> round(float(abs(chain.response(0.001)[0])), 6)
         1.0
         """
-        roots = (np.atleast_1d(np.asarray(r, dtype=np.complex128)) for r in (zeros, poles))
-        return cls._named(name, sections_of_roots(*roots, float(checks.finite("gain", gain))))
+        z, p = (np.atleast_1d(np.asarray(roots, dtype=np.complex128)) for roots in (zeros, poles))
+        return cls._named(name, sections_of_roots(z, p, float(checks.finite("gain", gain))))
 
     @classmethod
     def from_ba(cls, b: ArrayLike, a: ArrayLike, name: str = "section") -> AnalogChain:
