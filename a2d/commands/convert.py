@@ -24,6 +24,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     add_out(parser)
     parser.add_argument("--coefficients", action="store_true", help="show every coefficient in the terminal")
     parser.add_argument("--plots", action="store_true", help="write plots as SVG and PNG")
+    parser.add_argument("--report", action="store_true", help="write a report page: one HTML file with all of it")
 
 
 def run(args: argparse.Namespace) -> int:
@@ -49,6 +50,8 @@ def output_files(
     }
     if args.plots:
         files |= _plots(conversion)
+    if args.report:
+        files[f"{name}.report.html"] = _report(source, conversion)
     return files
 
 
@@ -63,6 +66,13 @@ def _plots(conversion: Conversion) -> dict[str, bytes]:
         table.name,
         table.title or table.name,
     )
+
+
+def _report(source: DesignFile, conversion: Conversion) -> bytes:
+    from a2d.report.content import Extras  # as above
+    from a2d.report.page import report_page
+
+    return report_page(conversion, source.sha256, Extras(notes=summary.notes(conversion)))
 
 
 def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:

@@ -11,7 +11,7 @@ from a2d.analog.chain import AnalogChain
 from a2d.compare.errors import Comparison
 from a2d.digital.twin import Twin
 from a2d.report.curve_plots import draw_error, draw_group_delay, draw_magnitude, draw_phase
-from a2d.report.graphics import FORMATS
+from a2d.report.graphics import FORMATS, settle
 from a2d.report.root_plot import draw_roots
 from a2d.report.style import FILE_SHEET, Sheet, drawing
 from a2d.report.text import plain
@@ -59,6 +59,7 @@ def plots(
         with drawing(FILE_SHEET.text, svg_text=False):
             figure = plot.draw(curves, comparisons, FILE_SHEET)
             figure.suptitle(f"{plain(title)} · {plot.caption.lower()}", x=0.01, ha="left", weight="bold")
+            settle(figure)
             for extension, write in FORMATS.items():
                 files[f"{name}.{key}.{extension}"] = write(figure)
     return files

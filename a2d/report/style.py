@@ -20,11 +20,22 @@ INK = "#1f2328"
 FAINT_INK = "#57606a"
 GRID = "#d8dee4"
 ANALOG = "#a3abb4"  # a broad band that the twins' thin lines run on
-BROKEN = "#c21f1f"  # limits
 
 # Apart from one another for the three common colour-vision deficiencies too, and at 3:1 or more against the paper:
 # tests/report/test_style.py measures both.
 TWINS = ("#302180", "#b37e0b", "#3a9ab6", "#7d0009", "#899468", "#5b1d41")
+TWINS_ON_DARK = ("#8289f7", "#fdc959", "#33f3ff", "#d35689", "#daf5c1", "#7d680e")
+
+# What a page calls each colour, and what it is on light and on dark paper.
+THEME: dict[str, tuple[str, str]] = {
+    "paper": (PAPER, "#161a1f"),
+    "ink": (INK, "#e8ecf0"),
+    "faint": (FAINT_INK, "#a3adb8"),
+    "grid": (GRID, "#323a43"),
+    "analog": (ANALOG, "#66707c"),
+    **{f"twin-{i}": pair for i, pair in enumerate(zip(TWINS, TWINS_ON_DARK, strict=True), 1)},
+}
+
 DASHES: tuple[str | tuple[int, tuple[float, ...]], ...] = (
     "solid",
     (0, (6.0, 2.0)),
@@ -48,7 +59,7 @@ class Sheet:
 
 FILE_SHEET = Sheet(width=9.0, panel=2.9, text=10.0, title=True, columns=3)
 PAGE_SHEET = Sheet(width=8.4, panel=2.5, text=9.5, title=False, columns=3)
-PHONE_SHEET = Sheet(width=4.1, panel=2.3, text=8.5, title=False, columns=1)
+PHONE_SHEET = Sheet(width=3.5, panel=2.1, text=8.5, title=False, columns=1)
 
 
 @contextmanager

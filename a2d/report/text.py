@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 
 def hertz(f_hz: float) -> str:
     """A short label: 20, 50, 1k, 2.5k, 20k, 1M.
@@ -35,8 +37,28 @@ def rate_label(sample_rate_hz: float) -> str:
 
 
 def signed(value: float) -> str:
-    """Three significant digits with a sign: +6.22, −0.00131."""
-    return f"{value:+.3g}".replace("-", "−")
+    """Three significant digits with a sign, never with an exponent.
+
+    >>> signed(6.2214), signed(-0.00131), signed(0.0), signed(-1.59e-05), signed(1234567.0)
+    ('+6.22', '−0.00131', '0', '−0.0000159', '+1230000')
+    """
+    if value == 0.0:
+        return "0"
+    digits = max(0, 2 - math.floor(math.log10(abs(value)))) if math.isfinite(value) else 0
+    text = f"{float(f'{value:.3g}'):+.{min(digits, 12)}f}"
+    return (text.rstrip("0").rstrip(".") if "." in text else text).replace("-", "−")
+
+
+def error_text(value: float, unit: str, at_hz: float) -> str:
+    """An error and where it lies; what nobody can hear or measure is not spelled out.
+
+    >>> error_text(-4.452, "dB", 20_000.0), error_text(1e-7, "°", 50.0)
+    ('−4.45 dB at 20 kHz', 'below 0.0001°')
+    """
+    space = "" if unit == "°" else " "
+    if abs(value) < 1e-4:
+        return f"below 0.0001{space}{unit}"
+    return f"{signed(value)}{space}{unit} at {hertz_with_unit(at_hz)}"
 
 
 def grouped(value: float) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -23,7 +23,10 @@ AROUND_A_ROOT = np.linspace(-4.0, 4.0, 33)  # half bandwidths either side of a r
 
 @dataclass(frozen=True, eq=False)
 class Curves:
-    """Magnitude (dB), continuous phase (degrees) and group delay (µs), each [F], at `f_hz` [F]."""
+    """Magnitude (dB), continuous phase (degrees) and group delay (µs), each [F], at `f_hz` [F].
+
+    The phase starts within ±180 degrees; the delay is NaN where the magnitude is `FLOOR_DB` below its maximum.
+    """
 
     f_hz: FloatArray
     magnitude_db: FloatArray
@@ -84,7 +87,10 @@ def _twin_traces(chain: AnalogChain, twin: Twin, band_hz: tuple[float, float], a
     roots = z_roots(twin)
     resonances = np.concatenate([analog_roots.values, s_of_z(roots, twin.sample_rate_hz).values])
     f = frequency_grid(band_hz, resonances)
-    return TwinTraces(twin.sample_rate_hz, twin_curves(twin, f), error_of(chain, twin, f), roots)
+    curves = twin_curves(twin, f)
+    turns = np.round((curves.phase_deg[0] - analog_curves(chain, f).phase_deg[0]) / 360.0)
+    curves = replace(curves, phase_deg=curves.phase_deg - 360.0 * turns)
+    return TwinTraces(twin.sample_rate_hz, curves, error_of(chain, twin, f), roots)
 
 
 def error_of(chain: AnalogChain, twin: Twin, f_hz: FloatArray) -> Curves:
@@ -127,6 +133,7 @@ def twin_curves(twin: Twin, f_hz: FloatArray) -> Curves:
 def _curves(f_hz: FloatArray, numerator: ComplexArray, denominator: ComplexArray, delay_s: FloatArray) -> Curves:
     magnitude = decibels(numerator, denominator)
     phase = np.degrees(np.sum(np.angle(numerator) - np.angle(denominator), axis=0))
+    phase -= 360.0 * np.round(phase[0] / 360.0)
     return Curves(f_hz, magnitude, phase, np.where(near_zero(magnitude), np.nan, 1e6 * delay_s))
 
 

@@ -1,4 +1,4 @@
-"""What `a2d convert` writes for people: plots."""
+"""What `a2d convert` writes for people: plots and the report."""
 
 from __future__ import annotations
 
@@ -48,6 +48,13 @@ def test_plots_are_written(design: Path, tmp_path: Path) -> None:
     written = {path.suffix for path in (tmp_path / "out").glob("quay.*.*")}
     assert {".svg", ".png"} <= written
     assert len(list((tmp_path / "out").glob("quay.*.svg"))) == 5
+
+
+def test_report_is_written(design: Path, tmp_path: Path) -> None:
+    assert main(["convert", str(design), "--out", str(tmp_path / "out"), "--report"]) == 1
+    page = (tmp_path / "out" / "quay.report.html").read_text(encoding="utf-8")
+    assert page.startswith("<!doctype html>")
+    assert "<strong>Fail.</strong> Over the stated limits at 48 kHz and 96 kHz." in page
 
 
 def test_a_plain_conversion_does_not_load_matplotlib(design: Path, tmp_path: Path) -> None:
