@@ -82,7 +82,8 @@ def test_a_plain_conversion_loads_nothing_heavy(tmp_path: Path) -> None:
     code = (
         "import sys; from a2d.cli import main;"
         f"status = main(['convert', {str(ROOT / 'audio_examples' / 'harbour_eq.toml')!r}, '--out', {str(tmp_path)!r}]);"
-        f"assert status == 0, status; heavy = [m for m in {HEAVY!r} if m in sys.modules]; sys.exit(', '.join(heavy) or 0)"
+        f"assert status == 0, status; heavy = [m for m in {HEAVY!r} if m in sys.modules];"
+        "sys.exit(', '.join(heavy) or 0)"
     )
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=False, cwd=ROOT)
     assert done.returncode == 0, done.stderr
