@@ -1,0 +1,3 @@
+typedef struct {
+    int64_t s1, s2;
+} @name@_state;
