@@ -66,7 +66,7 @@ def natural_frequency_hz(b: FloatArray, a: FloatArray) -> FloatArray:
     """
 
     def modulus(c: FloatArray) -> FloatArray:
-        with np.errstate(divide="ignore", invalid="ignore"):
+        with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
             two = np.sqrt(np.abs(c[..., 2] / c[..., 0]))
             one = np.abs(c[..., 2] / c[..., 1])
         return np.where(c[..., 0] != 0.0, two, np.where(c[..., 1] != 0.0, one, 0.0))

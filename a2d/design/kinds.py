@@ -137,12 +137,12 @@ class _Shelf(Section, frozen=True, kw_only=True):
             self._check_slope(float(self.slope))
 
     def _check_slope(self, slope: float) -> None:
+        """1/Q² = (A + 1/A)(1/S - 1) + 2 must be above zero (W3C note)."""
         a = 10.0 ** (self.gain / 40.0)
-        steepest = 1.0 / (1.0 - 2.0 / (a + 1.0 / a)) if self.gain else 1e4
-        if not 0.0 < slope < steepest:
-            raise ValueError(
-                f"slope is out of range ({slope:g}, allowed above 0 and below {steepest:.4g} at this gain)"
-            )
+        inverse_of_steepest = 1.0 - 2.0 / (a + 1.0 / a)
+        if slope <= 0.0 or slope * inverse_of_steepest >= 1.0:
+            below = f" and below {1.0 / inverse_of_steepest:.4g} at this gain" if inverse_of_steepest > 0.0 else ""
+            raise ValueError(f"slope is out of range ({slope:g}, allowed above 0{below})")
 
 
 class LowShelf(_Shelf, frozen=True, kw_only=True):

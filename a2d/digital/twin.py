@@ -101,7 +101,7 @@ def make_twin(
     ParameterError
         A match frequency at or above half the sample rate; an unknown method.
     ConversionError
-        A section has more zeros than poles, or the method has no solution for it.
+        A section has more zeros than poles or is unstable, or the method has no solution for it.
 
     Examples
     --------
@@ -112,7 +112,7 @@ def make_twin(
     """
     rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
     match = np.broadcast_to(chain.f0_hz if match_hz is None else np.asarray(match_hz, dtype=np.float64), len(chain))
-    _refuse_improper(chain)
+    _refuse_unfit(chain)
     methods = (method,) * len(chain) if isinstance(method, str) else tuple(method)
     _check_methods(chain.names, methods, match, rate)
     band = default_band_hz(rate) if band_hz is None else np.asarray(band_hz, dtype=np.float64)
@@ -136,11 +136,18 @@ def _check_methods(names: Sequence[str], methods: Sequence[str], match: FloatArr
             checks.below_half_rate(f'the match frequency of section "{name}"', f, rate)
 
 
-def _refuse_improper(chain: AnalogChain) -> None:
-    """A numerator of higher order than the denominator would give the twin a pole on the circle, at half the rate."""
+def _refuse_unfit(chain: AnalogChain) -> None:
+    """Refuse sections that rise without end (their twin would have a pole at half the rate) and unstable ones."""
     for name, b, a in zip(chain.names, chain.b, chain.a, strict=True):
-        if np.flatnonzero(b)[:1] < np.flatnonzero(a)[:1]:
+        order = np.flatnonzero(a)[0]
+        if np.flatnonzero(b)[:1] < order:
             raise ConversionError(
                 f'section "{name}" has more zeros than poles: it rises without end and has no stable twin; '
                 "add the pole that the hardware has"
+            )
+        # A polynomial of first or second order has its roots on the left when its coefficients have one sign.
+        if not (np.all(a[order:] > 0.0) or np.all(a[order:] < 0.0)):
+            raise ConversionError(
+                f'section "{name}" is unstable: a pole on the imaginary axis or right of it '
+                f"(a = {a.tolist()}, allowed coefficients of one sign)"
             )

@@ -167,3 +167,10 @@ def test_an_unknown_method_is_an_error() -> None:
     chain = chain_of(equalisers.peaking(1000.0, 1.0, 6.0))
     with pytest.raises(ParameterError, match="there is no method 'magic'"):
         make_twin(chain, 48_000.0, method="magic")
+
+
+@pytest.mark.parametrize("a", [[1, 0, 1e6], [1, -3, 1e6], [0, 1, -5], [1, 2, 0]])
+def test_an_unstable_section_is_an_error(a: list[float]) -> None:
+    chain = AnalogChain.of(["howl"], b=[[0, 0, 1]], a=[a], f0_hz=100.0)
+    with pytest.raises(ConversionError, match=r'section "howl" is unstable'):
+        make_twin(chain, 48_000.0)
