@@ -7,17 +7,15 @@ from typing import Any
 
 import numpy as np
 
+from a2d.analog.bank import Bank, cascade_of
 from a2d.analog.chain import AnalogChain, numbered
 from a2d.analog.hardware import network_sections
 from a2d.analog.kinds import sections_of
-from a2d.analog.sections import Sections, scaled
-from a2d.design.hardware import NetworkSection
+from a2d.analog.sections import Sections, natural_frequency_hz, scaled
+from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
 from a2d.design.model import Design
 from a2d.design.section import Section
 from a2d.errors import A2dError, DesignError, Fault
-
-# How each sort of [[section]] becomes analog sections: the first class that fits.
-BUILDERS: dict[type[Section], Callable[[Any], Sections]] = {NetworkSection: network_sections, Section: sections_of}
 
 
 def build_chain(design: Design) -> AnalogChain:
@@ -52,3 +50,25 @@ def build_section(section: Section) -> Sections:
     """The analog sections of one entry, its factor included."""
     builder = next(build for kind, build in BUILDERS.items() if isinstance(section, kind))
     return scaled(builder(section), section.factor)
+
+
+def bank_of(section: BankSection) -> Bank:
+    """The bands of a bank with their weights, the section's factor not included."""
+    bands = tuple(build_section(band) for band in section.band)
+    mix = np.array([band.mix for band in section.band], dtype=np.float64)
+    return Bank(tuple(band.name for band in section.band), bands, mix, float(section.direct))
+
+
+def bank_sections(section: BankSection) -> Sections:
+    """The sum of a bank's bands as a cascade."""
+    b, a = cascade_of(bank_of(section))
+    return Sections(b, a, natural_frequency_hz(b, a))
+
+
+# How each sort of [[section]] becomes analog sections: the first class that fits.
+BUILDERS: dict[type[Section], Callable[[Any], Sections]] = {
+    NetworkSection: network_sections,
+    CircuitSection: network_sections,
+    BankSection: bank_sections,
+    Section: sections_of,
+}

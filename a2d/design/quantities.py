@@ -21,6 +21,7 @@ _NUMBER = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]{1,3})?
 _LETTER_CODE = re.compile(r"(?P<sign>[+-]?)(?P<code>[0-9]*(?P<letter>[RLKkMGTmuµnp])[0-9]*)")
 _PREFIXES = frozenset("TGMkKmuµnp")
 _LONGEST = 64
+_LOUDEST_DB = 200.0
 
 
 class Quantity(float):
@@ -69,6 +70,12 @@ class Factor(Number):
     """A gain as a factor; negative inverts."""
 
     low, high = -1e6, 1e6
+
+
+class Mix(Factor):
+    """A weight in a sum: a factor, negative ones invert; or its level in dB."""
+
+    spellings = ("", "dB")
 
 
 class Coefficient(Number):
@@ -252,12 +259,15 @@ def _with_unit(text: str, plain: str, suffix: str, kind: type[Quantity]) -> floa
         raise QuantityError(f"is not a quantity ({text!r}, {_example(kind)})") from error
     if number.units:  # what quantiphy did not take as a prefix: "1e5k" is 1e5 "k" to it
         raise QuantityError(f"has an exponent and a prefix; write one of them ({text!r})")
+    if unit == "dB" and kind.unit != "dB":  # a factor given as a level
+        return 10.0 ** (float(number) / 20.0) if number <= _LOUDEST_DB else math.inf
     return float(number) / 100.0 if unit == "%" else float(number)
 
 
 def _example(kind: type[Quantity]) -> str:
     """What would have been right, for a message."""
     if not kind.unit:
-        return "expected a number or a percentage" if kind.percent else "expected a number"
+        other = " or a percentage" if kind.percent else " or a level in dB" if "dB" in kind.spellings else ""
+        return f"expected a number{other}"
     prefix = " with or without prefix" if kind.prefixed else ""
     return f"expected a value in {kind.unit}{prefix}"

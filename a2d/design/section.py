@@ -49,7 +49,7 @@ class Section(DesignStruct, frozen=True, kw_only=True):
             found = " and ".join(present) or "none of them"
             raise Unrecognised(f"a section has exactly one of: {', '.join(['kind', *cls.by_key])} ({found})")
         if present[0] != "kind":
-            return cls.by_key[present[0]]
+            return cls.by_key[present[0]].choose(table)
         kind = table["kind"]
         if not isinstance(kind, str) or kind not in cls.by_kind:
             raise Unrecognised(f"there is no kind {kind!r}{nearest(str(kind), cls.by_kind)}")
