@@ -10,7 +10,7 @@ import msgspec
 from a2d.design.circuits import PARTS_OF, CircuitParts
 from a2d.design.network import Network, OpAmpModel
 from a2d.design.quantities import Factor, Mix, Ohm, OhmOrZero
-from a2d.design.section import Section
+from a2d.design.section import Section, has_bands
 from a2d.design.structs import Unrecognised, nearest
 
 MOST_BANDS = 100
@@ -64,7 +64,7 @@ class Band(Section, frozen=True, kw_only=True):
     @classmethod
     def choose(cls, table: dict[str, Any]) -> type[Section]:
         """The class of the band's own sort, with `mix` added."""
-        if "band" in table:
+        if has_bands(table):
             raise Unrecognised("a band is not itself a bank (allowed: kind, circuit or network)")
         return band_of(Section.choose(table))
 

@@ -44,7 +44,7 @@ class Section(DesignStruct, frozen=True, kw_only=True):
         """The class that reads `table`, told by its `kind`, or by a key such as `circuit`."""
         if cls is not Section:
             return cls
-        present = [key for key in ("kind", *cls.by_key) if key in table]
+        present = [key for key in ("kind", *cls.by_key) if key in table and (key != "band" or has_bands(table))]
         if len(present) != 1:
             found = " and ".join(present) or "none of them"
             raise Unrecognised(f"a section has exactly one of: {', '.join(['kind', *cls.by_key])} ({found})")
@@ -59,3 +59,9 @@ class Section(DesignStruct, frozen=True, kw_only=True):
     def variants(cls) -> tuple[type[DesignStruct], ...]:
         """All sorts of section."""
         return tuple(cls.by_kind.values()) + tuple(cls.by_key.values()) if cls is Section else (cls,)
+
+
+def has_bands(table: dict[str, Any]) -> bool:
+    """Whether `band` holds tables, as in a bank; two frequencies are the edges of a band-pass."""
+    bands = table.get("band")
+    return isinstance(bands, list) and all(isinstance(band, dict) for band in bands)
