@@ -8,6 +8,7 @@ from a2d.analog.sections import Sections, natural_frequency_hz
 from a2d.arrays import ComplexArray, FloatArray
 from a2d.errors import ParameterError
 
+_NEXT_GROUP = np.log(3.0)
 _CONJUGATE_TOLERANCE = 1e-6  # of |root|: eigenvalue solvers give conjugates to some 1e-15, double roots to 1e-8
 
 
@@ -83,17 +84,23 @@ def _shared_out(pole_groups: list[ComplexArray], zeros: ComplexArray) -> list[Co
         free = [i for i, g in enumerate(pole_groups) if len(g) - len(own[i]) == 2]
         if not free:
             raise ParameterError("a pair of zeros finds no pair of poles to stand with")
-        own[min(free, key=lambda i: _distance(pair[0], pole_groups[i]))].extend(pair)
+        own[min(free, key=lambda i: _distance(pair[0], pole_groups[i], 0))].extend(pair)
     for zero in sorted(singles, key=abs, reverse=True):
         free = [i for i, g in enumerate(pole_groups) if len(g) > len(own[i])]
-        own[min(free, key=lambda i: (len(own[i]) * (zero == 0.0), _distance(zero, pole_groups[i])))].append(zero)
+        own[min(free, key=lambda i: _distance(zero, pole_groups[i], len(own[i])))].append(zero)
     return [np.array(o, dtype=np.complex128) for o in own]
 
 
-def _distance(zero: complex, poles: ComplexArray) -> float:
-    """|log of the ratio of moduli| to the nearest pole of a group; for a zero at 0, the log of the modulus."""
+def _distance(zero: complex, poles: ComplexArray, taken: int) -> float:
+    """How far a real zero is from a group of poles that has `taken` zeros already.
+
+    |log of the ratio of moduli| to the nearest pole. A zero at 0 goes to the lowest poles: both of a group's places
+    when the other poles lie more than three times higher (a high-pass and a low-pass), else one each (band-passes).
+    """
     moduli = np.log(np.abs(poles))
-    return float(moduli.min() if zero == 0.0 else np.min(np.abs(moduli - np.log(abs(zero)))))
+    if zero == 0.0:
+        return float(moduli.max()) + taken * _NEXT_GROUP
+    return float(np.min(np.abs(moduli - np.log(abs(zero)))))
 
 
 def _monic(roots: ComplexArray) -> FloatArray:
