@@ -8,7 +8,7 @@ from a2d.analog.sections import Sections, natural_frequency_hz
 from a2d.arrays import ComplexArray, FloatArray
 from a2d.errors import ParameterError
 
-_NEXT_GROUP = np.log(3.0)
+_NEXT_GROUP = float(np.log(3.0))
 _CONJUGATE_TOLERANCE = 1e-6  # of |root|: eigenvalue solvers give conjugates to some 1e-15, double roots to 1e-8
 
 
