@@ -1,0 +1,198 @@
+"""Order and scaling of the sections: the best signal-to-noise ratio with no boundary louder than the output.
+
+Every boundary inside the cascade is scaled so that a sine reaches there what it reaches at the output (Jackson 1970,
+see `noise`). The noise of a section then depends only on which sections come before it, and the best of all orders is
+found by dynamic programming over the sets of sections already placed (Held and Karp 1962, J. SIAM 10(1)).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cache
+
+import numpy as np
+
+from a2d.arrays import ComplexArray, FloatArray
+from a2d.digital.response import polynomial
+from a2d.wordlength.noise import boundary_peaks, circle_grid, noise_gains, power_gain, shape_of
+
+ALL_ORDERS_UP_TO = 8  # 255 sets of sections; the work doubles with each one more
+
+
+@dataclass(frozen=True, eq=False)
+class Arrangement:
+    """A cascade in a certain order and scaling.
+
+    Parameters
+    ----------
+    order
+        Which of the original sections stands where.
+    sos
+        Shape [S, 6].
+    peaks
+        Shape [S]: the largest |H| from the input to each section's output.
+    noise
+        The power gain from the sections' rounding to the output, summed.
+    """
+
+    order: tuple[int, ...]
+    sos: FloatArray
+    peaks: FloatArray
+    noise: float
+
+    @property
+    def boundary_db(self) -> FloatArray:
+        """Each boundary's peak re the output's, dB; shape [S], the last is 0."""
+        return np.asarray(20.0 * np.log10(self.peaks / self.peaks[-1]))
+
+    @property
+    def signal_to_noise_db(self) -> float:
+        """The largest undistorted sine at the output over the noise there, in dB re one rounding's noise.
+
+        A boundary louder than the output costs signal: the input has to be that much lower.
+        """
+        loss = max(0.0, float(np.max(self.boundary_db)))
+        return float(-10.0 * np.log10(self.noise)) - loss
+
+
+def as_it_is(
+    placed: FloatArray, order: tuple[int, ...] | None = None, structure: str = "direct_form_1", error_feedback: int = 0
+) -> Arrangement:
+    """The figures of sections `placed` [S, 6], which already stand in `order`."""
+    noise = float(np.sum(noise_gains(placed, structure, error_feedback)))
+    return Arrangement(tuple(range(len(placed))) if order is None else order, placed, boundary_peaks(placed), noise)
+
+
+def scaled(
+    sos: FloatArray, order: tuple[int, ...], structure: str = "direct_form_1", error_feedback: int = 0
+) -> Arrangement:
+    """The sections in an order, every boundary scaled to the output's peak; the whole response stays what it was."""
+    placed = sos[list(order)].copy()
+    level = boundary_peaks(placed)
+    cumulative = level[-1] / level
+    placed[:, :3] *= (cumulative / np.concatenate([[1.0], cumulative[:-1]]))[:, np.newaxis]
+    return as_it_is(placed, order, structure, error_feedback)
+
+
+def best_arrangement(sos: FloatArray, structure: str = "direct_form_1", error_feedback: int = 0) -> Arrangement:
+    """The order with the best signal-to-noise ratio, scaled.
+
+    Parameters
+    ----------
+    sos
+        Shape [S, 6]. All orders are compared for up to `ALL_ORDERS_UP_TO` sections; beyond, orders are improved by
+        moving one section at a time until no move helps.
+    structure, error_feedback
+        What rounds, and so where its noise enters.
+    """
+    cost = _cost_of_placing(sos, structure, error_feedback)
+    search = _all_orders if len(sos) <= ALL_ORDERS_UP_TO else _moves
+    return scaled(sos, search(len(sos), cost), structure, error_feedback)
+
+
+Cost = Callable[[int, int], float]
+
+
+def _cost_of_placing(sos: FloatArray, structure: str, error_feedback: int) -> Cost:
+    """cost(before, k): the noise at the output of section k after the set `before` (a bit a section), scaled.
+
+    The noise of section k passes the sections that are not yet placed; scaling makes it (peak up to k)²/(peak of all)²
+    of what it was.
+    """
+    count = len(sos)
+    u = circle_grid(sos)
+    sections = np.abs(polynomial(sos[:, :3], u) / polynomial(sos[:, 3:], u))
+    shape = shape_of(structure, error_feedback)
+
+    @cache
+    def peak(placed: int) -> float:
+        return float(np.max(np.prod([sections[j] for j in range(count) if placed >> j & 1], axis=0)))
+
+    @cache
+    def gain(k: int, after: int) -> float:
+        path = sos[[k] + [j for j in range(count) if after >> j & 1]].copy()
+        path[0, :3] = shape
+        return float(power_gain(path))
+
+    def cost(before: int, k: int) -> float:
+        placed = before | 1 << k
+        after = ((1 << count) - 1) & ~placed
+        return gain(k, after) * peak(placed) ** 2
+
+    return cost
+
+
+def _all_orders(count: int, cost: Cost) -> tuple[int, ...]:
+    best: dict[int, tuple[float, tuple[int, ...]]] = {0: (0.0, ())}
+    for placed in range(1, 1 << count):
+        choices = []
+        for k in range(count):
+            if placed >> k & 1:
+                before = placed & ~(1 << k)
+                choices.append((best[before][0] + cost(before, k), (*best[before][1], k)))
+        best[placed] = min(choices)
+    return best[(1 << count) - 1][1]
+
+
+def _moves(count: int, cost: Cost) -> tuple[int, ...]:
+    """From the designed order and its reverse, move one section at a time as long as that helps."""
+
+    def total(order: tuple[int, ...]) -> float:
+        before, noise = 0, 0.0
+        for k in order:
+            noise += cost(before, k)
+            before |= 1 << k
+        return noise
+
+    found = []
+    for start in (tuple(range(count)), tuple(reversed(range(count))), _greedy(count, cost)):
+        order, noise = start, total(start)
+        while True:
+            candidates = [_moved(order, i, j) for i in range(count) for j in range(count) if i != j]
+            best = min(candidates, key=total)
+            if not total(best) < noise:
+                break
+            order, noise = best, total(best)
+        found.append((noise, order))
+    return min(found)[1]
+
+
+def _greedy(count: int, cost: Cost) -> tuple[int, ...]:
+    order: tuple[int, ...] = ()
+    before = 0
+    while len(order) < count:
+        k = min((k for k in range(count) if not before >> k & 1), key=lambda k: cost(before, k))
+        order, before = (*order, k), before | 1 << k
+    return order
+
+
+def _moved(order: tuple[int, ...], i: int, j: int) -> tuple[int, ...]:
+    rest = order[:i] + order[i + 1 :]
+    return rest[:j] + (order[i],) + rest[j:]
+
+
+def pair_nearest(sos: FloatArray) -> FloatArray:
+    """The same cascade with numerators dealt anew: the pole pair closest to the circle takes the nearest zeros.
+
+    The usual rule (e.g. Oppenheim and Schafer, Discrete-Time Signal Processing, 3rd ed., section 6.9.3); the order of
+    the denominators stays. `sos` [S, 6].
+    """
+    radius = 1.0 - _upper(sos[:, 3:])[1]
+    zeros, poles = _upper(sos[:, :3])[0], _upper(sos[:, 3:])[0]
+    free, paired = list(range(len(sos))), sos.copy()
+    for k in np.argsort(radius):
+        nearest = min(free, key=lambda j: abs(zeros[j] - poles[k]))
+        free.remove(nearest)
+        paired[k, :3] = sos[nearest, :3]
+    return paired
+
+
+def _upper(c: FloatArray) -> tuple[ComplexArray, FloatArray]:
+    """The root of c0·z² + c1·z + c2 in the upper half plane (or the larger real one), and its modulus; c [S, 3]."""
+    found = []
+    for row in c:
+        roots = np.roots(np.trim_zeros(row, "f"))
+        found.append(max(roots, key=lambda r: (r.imag, abs(r))) if len(roots) else 0.0)
+    upper = np.array(found, dtype=np.complex128)
+    return upper, np.abs(upper)
