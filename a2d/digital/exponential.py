@@ -5,6 +5,8 @@ from __future__ import annotations
 import numpy as np
 
 from a2d.arrays import BoolArray, FloatArray
+from a2d.digital.shapes import Shape, gain_at_zero
+from a2d.digital.warped import to_z
 
 
 def map_roots(c: FloatArray, sample_rate_hz: FloatArray) -> FloatArray:
@@ -39,6 +41,18 @@ def above_half_rate(c: FloatArray, sample_rate_hz: FloatArray) -> BoolArray:
     """Whether the roots of `c` [..., 3] oscillate at or above half the rate, where z = e^{s/fs} folds them down."""
     _, square = _decay_and_square(c, c[..., 0] != 0.0)
     return np.asarray((square < 0.0) & (np.sqrt(np.abs(square)) >= np.pi * sample_rate_hz))
+
+
+def own_poles(shape: Shape, sample_rate_hz: FloatArray) -> FloatArray:
+    """`sos` [N, 6] of sections whose zeros lie where their poles lie: a gain, with the poles mapped.
+
+    The poles stay, so that a control that passes 0 dB moves them evenly; those above half the rate go to 0.
+    """
+    poles = to_z(map_roots(shape.a, sample_rate_hz), ~shape.second_order)
+    folded = above_half_rate(shape.a, sample_rate_hz)
+    poles = np.where(folded[:, np.newaxis], np.array([1.0, 0.0, 0.0]), poles)
+    poles[:, 0] = 1.0
+    return np.concatenate([gain_at_zero(shape.b, shape.a)[:, np.newaxis] * poles, poles], axis=-1)
 
 
 def _decay_and_square(c: FloatArray, two: BoolArray) -> tuple[FloatArray, FloatArray]:

@@ -11,7 +11,7 @@ from a2d import checks
 from a2d.analog.response import polynomial
 from a2d.arrays import BoolArray, FloatArray
 from a2d.digital import warped
-from a2d.digital.exponential import above_half_rate, map_roots
+from a2d.digital.exponential import above_half_rate, map_roots, own_poles
 from a2d.digital.refusal import refuse
 from a2d.digital.shapes import Shape, gain_at_zero, shape_of
 
@@ -84,6 +84,11 @@ def _with_rows(form: Form, b: FloatArray, a: FloatArray, rate: FloatArray, match
 def _gain(b: FloatArray, a: FloatArray, rate: FloatArray, match: FloatArray) -> Polynomials:
     one = np.broadcast_to(np.array([1.0, 0.0, 0.0]), b.shape)
     return one * gain_at_zero(b, a)[..., np.newaxis], one
+
+
+def _own_poles(b: FloatArray, a: FloatArray, rate: FloatArray, match: FloatArray) -> Polynomials:
+    sos = own_poles(Shape(b, a), rate)
+    return sos[:, :3], sos[:, 3:]
 
 
 def _allpass(b: FloatArray, a: FloatArray, rate: FloatArray, match: FloatArray) -> Polynomials:
@@ -228,6 +233,7 @@ Form = Callable[[FloatArray, FloatArray, FloatArray, FloatArray], Polynomials]
 
 FORMS: tuple[tuple[Callable[[Shape], BoolArray], Form], ...] = (
     (lambda s: s.gain, _gain),
+    (lambda s: s.own_poles_only, _own_poles),
     (lambda s: s.allpass, _allpass),
     (lambda s: s.lowpass, _lowpass),
     (lambda s: s.highpass | (s.first_order & (s.b[..., 2] == 0.0)), _highpass),

@@ -14,10 +14,11 @@ from typing import TypeAlias
 from a2d.arrays import FloatArray
 from a2d.digital.bilinear import bilinear
 from a2d.digital.magnitude_matched import magnitude_matched
+from a2d.digital.minimax import minimax
 
 Method: TypeAlias = Callable[[FloatArray, FloatArray, FloatArray, FloatArray, FloatArray], FloatArray]
 
-METHODS: dict[str, Method] = {"bilinear": bilinear, "magnitude_matched": magnitude_matched}
+METHODS: dict[str, Method] = {"bilinear": bilinear, "magnitude_matched": magnitude_matched, "minimax": minimax}
 
 EXACT_AT_MATCH = frozenset({"bilinear", "magnitude_matched"})
 """The methods that are exact at the match frequency, which therefore has to lie below half the sample rate."""

@@ -14,6 +14,8 @@ NEGLIGIBLE = 1e-8
 """... no difference: this part of the largest term, less than 1e-7 dB; rounding in a network leaves some 1e-13."""
 NO_DAMPING = 1e-12
 """1/Q below which a pair of zeros lies on the axis."""
+SAME = 1e-12
+"""The relative difference at which zeros count as lying where the poles lie."""
 MIRRORED = 1e-9
 """The relative difference at which zeros count as the mirrored poles of an all-pass section."""
 
@@ -43,6 +45,13 @@ class Shape:
     def second_order(self) -> BoolArray:
         """Two poles."""
         return np.asarray(self.a[..., 0] != 0.0)
+
+    @property
+    def own_poles_only(self) -> BoolArray:
+        """Two or one poles, and zeros in the same places: a peaking section or a shelf of 0 dB."""
+        expected = self.a * gain_at_zero(self.b, self.a)[..., np.newaxis]
+        close = np.all(np.abs(self.b - expected) <= SAME * np.abs(expected), axis=-1)
+        return np.asarray(close & (self.second_order | self.first_order))
 
     @property
     def improper(self) -> BoolArray:
