@@ -93,12 +93,16 @@ def _capacitor(layout: Layout, name: str, part: Capacitor) -> None:
         a = inner
     if part.leakage_resistance is not None:
         layout.conductance(a, b, _conductance(layout, f"{name}.leakage_resistance", part.leakage_resistance))
-    _capacitance(layout, a, b, layout.value(name, part.capacitor))
+    _capacitance(layout, a, b, name, layout.value(name, part.capacitor))
 
 
-def _capacitance(layout: Layout, a: int, b: int, value: int) -> None:
-    across = {a: 1.0, b: -1.0}
-    layout.react(across, across, _scaled(layout, value, layout.impedance))
+def _capacitance(layout: Layout, a: int, b: int, name: str, value: int) -> None:
+    """s·C·(v(a) - v(b)) - i = 0: with the current as an unknown a large s·C never swallows a conductance beside it."""
+    k = layout.unknown(f"{name}#current")
+    layout.add(a, k, 1.0)
+    layout.add(b, k, -1.0)
+    layout.add(k, k, -1.0)
+    layout.react({k: 1.0}, {a: 1.0, b: -1.0}, _scaled(layout, value, layout.impedance))
 
 
 def _inductor(layout: Layout, name: str, part: Inductor) -> None:
@@ -110,7 +114,8 @@ def _inductor(layout: Layout, name: str, part: Inductor) -> None:
     if part.resistance > 0.0:
         _resistance_term(layout, k, layout.value(f"{name}.resistance", part.resistance))
     if part.parallel_capacitance > 0.0:
-        _capacitance(layout, a, b, layout.value(f"{name}.parallel_capacitance", part.parallel_capacitance))
+        parallel = f"{name}.parallel_capacitance"
+        _capacitance(layout, a, b, parallel, layout.value(parallel, part.parallel_capacitance))
 
 
 def _potentiometer(layout: Layout, name: str, part: Potentiometer) -> None:

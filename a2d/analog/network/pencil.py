@@ -12,6 +12,7 @@ bordered with source and output; its K is K - p·qᵀ/H(σ), with p, q below.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -72,8 +73,7 @@ def reduce(pencil: Pencil, shift: FloatArray, lift: float = 0.0) -> Reduced:
     With `lift` the zeros are those of H + lift, which stay where they are when H itself vanishes at σ.
     """
     at_shift = pencil.g + np.asarray(shift)[..., np.newaxis, np.newaxis] * pencil.susceptance()
-    sides = np.concatenate([pencil.u, pencil.e[:, np.newaxis]], axis=1)
-    x = np.linalg.solve(at_shift, np.broadcast_to(sides, (*at_shift.shape[:-1], sides.shape[1])))
+    x = _solve(at_shift, np.concatenate([pencil.u, pencil.e[:, np.newaxis]], axis=1))
     c = pencil.c[..., :, np.newaxis]
     seen = c * (pencil.v.T @ x)
     q_h = np.einsum("n,...nk->...k", pencil.out, x)
@@ -84,10 +84,16 @@ def reduce(pencil: Pencil, shift: FloatArray, lift: float = 0.0) -> Reduced:
     return Reduced(h, k, zeros)
 
 
+def _solve(a: Any, sides: FloatArray) -> Any:
+    """a⁻¹·sides for a [..., n, n], sides [n, k], every equation first scaled to a largest coefficient of 1."""
+    largest = np.abs(a).max(axis=-1, keepdims=True)
+    return np.linalg.solve(a / largest, sides / largest)
+
+
 def direct_response(pencil: Pencil, f_hz: FloatArray) -> ComplexArray:
     """H(j2πf) by solving the pencil itself at each frequency [F] (one network), with one step of refinement."""
     a = pencil.g + (2j * np.pi * f_hz)[:, np.newaxis, np.newaxis] * pencil.susceptance()
-    e = np.broadcast_to(pencil.e[:, np.newaxis], (*a.shape[:-1], 1))
-    x = np.linalg.solve(a, e)
-    x = x + np.linalg.solve(a, e - a @ x)
+    e = pencil.e[:, np.newaxis]
+    x = _solve(a, e)
+    x = x + _solve(a, e - a @ x)
     return np.asarray(x[..., 0] @ pencil.out)

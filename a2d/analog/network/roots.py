@@ -20,9 +20,11 @@ from a2d.arrays import ComplexArray, FloatArray
 from a2d.errors import NetworkError
 
 _MIDDLE_RAD_S = 6000.0  # about 1 kHz
-# Steps between shifts, and how many decades around the middle they cover: where audio circuits have all of their
-# roots, where any circuit has, and the same with steps so small that many roots at infinity blur to outside of each.
-_LADDERS = ((10.0, -4.0, 5.0), (10.0, -12.0, 13.0), (1.6, -12.0, 13.0))
+# Steps between shifts, and the decades around the middle that they cover: no wider than needed, since far out the
+# rounding errors of roots at zero and at infinity look like roots; and with small steps, so that many roots at infinity
+# blur to outside of each step.
+_LADDERS = ((10.0, -4, 6), (10.0, -6, 9), (10.0, -9, 13), (10.0, -16, 13), (1.6, -4, 6), (1.6, -9, 13))
+_WIDE = 2  # the ladder that covers what any circuit has
 _OFFSETS = (1.0, 1.37, 0.71, 1.93)  # a root on the border of two steps may be counted twice or not at all
 _SINGULAR = "the network's equations have no unique solution (look for parts that leave a voltage or current open)"
 
@@ -79,20 +81,30 @@ def poles_of(pencil: Pencil) -> ComplexArray:
 
 def _search(pencil: Pencil, degrees: Sequence[Degree]) -> tuple[list[ComplexArray], FloatArray, FloatArray]:
     """The poles, and the zeros where `degrees` has two, with the shifts that they were found from and H there."""
-    found: list[ComplexArray] = []
+    counts = tuple(degree.elsewhere for degree in degrees)
+    tries: list[tuple[int, ...]] = []
     for (step, low, high), offset in itertools.product(_LADDERS, _OFFSETS):
-        rungs = np.arange(low / np.log10(step), high / np.log10(step))
+        rungs = np.arange(round(low / np.log10(step)), round(high / np.log10(step)) + 1)
         shifts, seen = _seen_from(pencil, offset * _MIDDLE_RAD_S * step**rungs)
-        found = [
-            _within(matrix, shifts, step, degree.elsewhere)
-            for matrix, degree in zip((seen.poles, seen.zeros), degrees, strict=False)
-        ]
-        if all(len(roots) == degree.elsewhere for roots, degree in zip(found, degrees, strict=True)):
+        matrices = zip((seen.poles, seen.zeros), counts, strict=False)
+        found = [_within(matrix, shifts, step, count) for matrix, count in matrices]
+        tries.append(tuple(map(len, found)))
+        if tries[-1] == counts or _rest_is_far(tries, counts):
             return found, shifts, seen.h
-    counts = ", ".join(f"{len(r)} of {d.elsewhere}" for r, d in zip(found, degrees, strict=True))
+    seen_of = ", ".join(f"{k} of {n}" for k, n in zip(tries[-1], counts, strict=True))
     raise NetworkError(
-        f"the roots cannot be told apart in double precision ({counts} found; look for values far out of range)"
+        f"the roots cannot be told apart in double precision ({seen_of} found; look for values far out of range)"
     )
+
+
+def _rest_is_far(tries: list[tuple[int, ...]], counts: tuple[int, ...]) -> bool:
+    """Whether all tries of the wide ladder found the same roots and fewer than there are: the rest is beyond 10¹⁶ Hz.
+
+    The caller's check against the network finds out if it is not.
+    """
+    wide = set(tries[_WIDE * len(_OFFSETS) : (_WIDE + 1) * len(_OFFSETS)])
+    complete = len(tries) == len(_LADDERS) * len(_OFFSETS)
+    return complete and len(wide) == 1 and all(k <= n for k, n in zip(wide.pop(), counts, strict=True))
 
 
 def _seen_from(pencil: Pencil, shifts: FloatArray) -> tuple[FloatArray, Reduced]:
