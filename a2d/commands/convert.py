@@ -11,6 +11,7 @@ from a2d.commands.options import add_design, add_out
 from a2d.commands.terminal import console
 from a2d.conversion import Conversion, convert
 from a2d.design.read import DesignFile, read_design_file
+from a2d.errors import AudioError
 from a2d.files import write_all
 from a2d.firmware.deliver import Delivery
 from a2d.firmware.manifest import manifest, sos_table
@@ -51,7 +52,7 @@ def output_files(
     if args.plots:
         files |= _plots(conversion)
     if args.report:
-        files[f"{name}.report.html"] = _report(source, conversion)
+        files[f"{name}.report.html"] = _report(source, conversion, delivery)
     return files
 
 
@@ -68,11 +69,18 @@ def _plots(conversion: Conversion) -> dict[str, bytes]:
     )
 
 
-def _report(source: DesignFile, conversion: Conversion) -> bytes:
+def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> bytes:
     from a2d.report.content import Extras  # as above
+    from a2d.report.examples import examples
+    from a2d.report.findings import findings
     from a2d.report.page import report_page
 
-    return report_page(conversion, source.sha256, Extras(notes=summary.notes(conversion)))
+    notes = [*summary.notes(conversion), *delivery.warnings]
+    try:
+        recordings = examples(conversion)
+    except AudioError as error:
+        recordings, notes = (), [*notes, f"No sound to play: {error}"]
+    return report_page(conversion, source.sha256, Extras(findings(delivery), recordings, notes))
 
 
 def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:

@@ -26,6 +26,7 @@ from a2d.listening.signals import SIGNALS, SignalSettings
 from a2d.listening.wav import audio_info, read_blocks
 
 HELP = "test signals or an audio file through the analog model and the twin, as WAV or FLAC"
+_BLIND = (".analog", ".twin", ".analog.matched", ".twin.matched")
 SECONDS = {"sines": 2.0, "impulse": 1.0, "pink": 10.0}
 
 
@@ -53,6 +54,9 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--match-level", action="store_true", help="also write analog and twin at the input's loudness (ITU-R BS.1770)"
     )
+    parser.add_argument(
+        "--blind", action="store_true", help="also write a page for a blind comparison of analog model and twin"
+    )
     parser.add_argument("--seed", type=int, default=1, help="of noise and dither (default 1)")
 
 
@@ -63,6 +67,8 @@ def run(args: argparse.Namespace) -> int:
     jobs = _test_signals(args, design, chain) if args.audio is None else {args.audio.stem: _audio(args, design, chain)}
     name = design.design.name
     write_all(args.out, {f"{name}.render.json": json.dumps({"renderings": _data(jobs)}, indent=1) + "\n"})
+    if args.blind:
+        write_all(args.out, _blind_pages(jobs))
     for title, (rendered, twin) in jobs.items():
         print(f"{title} at {hertz(twin.sample_rate_hz)}")
         print("".join(f"  {line}\n" for line in log.lines(rendered)), end="")
@@ -77,6 +83,21 @@ def _data(jobs: dict[str, tuple[Rendered, Twin]]) -> list[dict[str, object]]:
         | log.as_data(rendered)
         for title, (rendered, twin) in jobs.items()
     ]
+
+
+def _blind_pages(jobs: dict[str, tuple[Rendered, Twin]]) -> dict[str, bytes | str]:
+    """A blind comparison of each rendering's analog and twin files, level-matched where there are such."""
+    from a2d.report.blind import blind_page  # jinja2 is loaded only when asked for
+
+    pages: dict[str, bytes | str] = {}
+    for title, (rendered, _) in jobs.items():
+        by_version = {name: file.path for file in rendered.files for name in _BLIND if file.path.stem.endswith(name)}
+        found = [by_version.get(f"{name}.matched", by_version.get(name)) for name in (".analog", ".twin")]
+        if found[0] is None or found[1] is None:
+            raise ParameterError("a blind comparison needs analog and twin (add both to --write, or leave it out)")
+        stem = found[0].stem.removesuffix(".matched").removesuffix(".analog")
+        pages[f"{stem}.blind.html"] = blind_page(found[0].read_bytes(), found[1].read_bytes(), title=title)
+    return pages
 
 
 def _output(args: argparse.Namespace, stem: str, versions: list[str]) -> Output:

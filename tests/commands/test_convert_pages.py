@@ -1,12 +1,16 @@
-"""What `a2d convert` writes for people: plots and the report."""
+"""What `a2d convert` writes for people: plots, the report, the blind comparison."""
 
 from __future__ import annotations
 
+import base64
+import re
 import subprocess
 import sys
 from pathlib import Path
 
+import numpy as np
 import pytest
+import soundfile
 
 from a2d.cli import main
 
@@ -55,6 +59,27 @@ def test_report_is_written(design: Path, tmp_path: Path) -> None:
     page = (tmp_path / "out" / "quay.report.html").read_text(encoding="utf-8")
     assert page.startswith("<!doctype html>")
     assert "<strong>Fail.</strong> Over the stated limits at 48 kHz and 96 kHz." in page
+
+    for heading in ("After rounding", "Headroom", "Listen"):
+        assert f">{heading}</h2>" in page
+    assert page.count("<audio ") == 3
+
+
+def test_blind_page_of_a_rendering(design: Path, tmp_path: Path) -> None:
+    out, song = tmp_path / "out", tmp_path / "song.analog.wav"
+    soundfile.write(song, 0.1 * np.sin(np.arange(48_000) / 7.0), 48_000)
+    assert main(["render", str(design), str(song), "--out", str(out), "--match-level", "--blind"]) == 0
+    page = (out / "quay.song.analog.blind.html").read_text()
+    inside = [base64.b64decode(part) for part in re.findall(r'<script type="text/plain"[^>]*>([^<]*)</script>', page)]
+    files = [out / f"quay.song.analog.{version}.matched.wav" for version in ("analog", "twin")]
+    assert inside == [file.read_bytes() for file in files]
+    assert "Loudness is matched" in page
+
+
+def test_blind_page_needs_both(design: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    arguments = ["render", str(design), "--out", str(tmp_path), "--signal", "impulse", "--write", "twin", "--blind"]
+    assert main(arguments) == 2
+    assert "a blind comparison needs analog and twin" in capsys.readouterr().err
 
 
 def test_a_plain_conversion_does_not_load_matplotlib(design: Path, tmp_path: Path) -> None:

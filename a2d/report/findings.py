@@ -1,0 +1,52 @@
+"""What the firmware's numbers do, as tables for the report: rounding, and the headroom inside the cascade."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from a2d.firmware.deliver import Delivery
+from a2d.report.content import Finding
+from a2d.report.text import error_text, rate_label
+from a2d.wordlength.noise import boundary_peaks, boundary_sums
+
+
+def findings(delivery: Delivery) -> tuple[Finding, ...]:
+    """All tables of a delivery."""
+    return rounding(delivery), headroom(delivery)
+
+
+def rounding(delivery: Delivery) -> Finding:
+    """Errors of the rounded twins against the analog chain; broken limits make it fail."""
+    rows = []
+    for twin, comparison, breaches in zip(delivery.twins, delivery.comparisons, delivery.breaches, strict=True):
+        errors = (
+            error_text(comparison.magnitude_db.worst, "dB", comparison.magnitude_db.at_hz),
+            error_text(comparison.phase_deg.worst, "°", comparison.phase_deg.at_hz),
+            error_text(comparison.group_delay_us.worst, "µs", comparison.group_delay_us.at_hz),
+        )
+        rows.append((rate_label(twin.sample_rate_hz), *errors, "; ".join(str(b) for b in breaches) or "none broken"))
+    text = " ".join(f"{line}." for line in delivery.lines)
+    columns = ("Rate", "Magnitude", "Phase", "Group delay", "Limits")
+    return Finding("After rounding", text, columns, rows, not any(delivery.breaches))
+
+
+def headroom(delivery: Delivery) -> Finding:
+    """Peak level at each section's output, at each rate, for a sine and for any signal within full scale."""
+    twins = delivery.twins
+    peaks = [20.0 * np.log10(np.maximum(boundary_peaks(twin.sos), 1e-15)) for twin in twins]
+    sums = [20.0 * np.log10(max(float(boundary_sums(twin.sos).max()), 1e-15)) for twin in twins]
+    rows: list[tuple[str, ...]] = [
+        (name, *(_decibels(peak[i]) for peak in peaks)) for i, name in enumerate(twins[0].names)
+    ]
+    rows.append(("anywhere, any signal", *(_decibels(level) for level in sums)))
+    text = (
+        "The level that a full-scale sine of the worst frequency reaches at each section's output, in the order of the "
+        "header; the last row is the sum of the impulse response's modulus, which no signal within full scale exceeds. "
+        "A fixed-point cascade needs that much room above the input's level."
+    )
+    columns = ("Output of section", *(rate_label(twin.sample_rate_hz) for twin in twins))
+    return Finding("Headroom", text, columns, rows)
+
+
+def _decibels(level: float) -> str:
+    return f"{level:+.2f} dB".replace("-", "−")

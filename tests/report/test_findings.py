@@ -1,0 +1,64 @@
+"""Rounding, headroom and sound on the report, against scipy."""
+
+from __future__ import annotations
+
+import io
+
+import numpy as np
+import pytest
+import soundfile
+from scipy import signal
+
+from a2d.commands.delivery import delivery_of
+from a2d.conversion import convert
+from a2d.design.read import parse_design
+from a2d.report.examples import LEVEL_DBFS, SECONDS, examples
+from a2d.report.findings import headroom, rounding
+from tests.report.test_report_page import DESIGN, LIMITS, conversion
+
+
+def level(cell: str) -> float:
+    return float(cell.removesuffix(" dB").replace("−", "-"))
+
+
+def test_headroom_against_scipy() -> None:
+    delivery = delivery_of(conversion(), "00")
+    rows = headroom(delivery).rows
+    assert [row[0] for row in rows] == ["presence", "air", "hum", "anywhere, any signal"]
+    f = np.linspace(0.0, np.pi, 200_001)
+    for column, twin in enumerate(delivery.twins, 1):
+        sums = []
+        for count in range(1, 4):
+            _, h = signal.sosfreqz(twin.sos[:count], f)
+            # Two places are shown; the even grid finds a peak to far better than half of the last.
+            assert level(rows[count - 1][column]) == pytest.approx(20.0 * np.log10(np.abs(h).max()), abs=6e-3)
+            unit = np.zeros(200_000)
+            unit[0] = 1.0
+            sums.append(np.sum(np.abs(signal.sosfilt(twin.sos[:count], unit))))
+        assert level(rows[3][column]) == pytest.approx(20.0 * np.log10(max(sums)), abs=6e-3)
+
+
+def test_rounding_states_each_rate_and_the_verdict() -> None:
+    without_notch = DESIGN.rpartition("[[section]]")[0].format(title="Quay", section="presence", limits=LIMITS)
+    table = rounding(delivery_of(convert(parse_design(without_notch)), "00"))
+    assert table.passed is False
+    assert [row[0] for row in table.rows] == ["48 kHz", "96 kHz"]
+    assert "allowed 1 dB either way" in table.rows[0][-1]
+    assert table.rows[1][-1] == "none broken"
+    assert "float32" in table.text
+
+
+def test_sound_is_what_the_twin_makes_of_the_input() -> None:
+    made = conversion()
+    recordings = examples(made)
+    assert len(recordings) == 3
+    sound = [soundfile.read(io.BytesIO(recording.audio)) for recording in recordings]
+    assert {rate for _, rate in sound} == {48_000}
+    given, analog, twin = (samples for samples, _ in sound)
+    assert len(given) == round(SECONDS * 48_000)
+    rms_dbfs = 10.0 * np.log10(2.0 * np.mean(given**2))  # a full-scale sine has a mean square of 1/2
+    assert rms_dbfs == pytest.approx(LEVEL_DBFS, abs=0.1)  # the faded ends take a little
+    # Dither and rounding of both files: at most 1.5 steps each, the input's times the sections' largest Σ|h| of 4.
+    step = 2.0**-15
+    assert np.abs(signal.sosfilt(made.judged[0].twin.sos, given) - twin).max() < 1.5 * step * 5.0
+    assert 0.01 < np.sqrt(np.mean((analog - twin) ** 2)) / np.sqrt(np.mean(twin**2)) < 0.5
