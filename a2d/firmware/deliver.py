@@ -7,16 +7,16 @@ from dataclasses import dataclass
 from a2d.analog.chain import AnalogChain
 from a2d.compare.errors import Comparison, compare
 from a2d.compare.verdict import Breach, judge
-from a2d.design.firmware import Firmware, FixedNumber
+from a2d.design.firmware import Firmware
 from a2d.design.model import Design
 from a2d.digital.twin import Twin
+from a2d.firmware import words
 from a2d.firmware.header import write_header
+from a2d.firmware.kernel import arithmetic_of, write_kernel
 from a2d.firmware.model import Header, ProvedError, Table
+from a2d.firmware.plan import Plan, make_plan
+from a2d.firmware.vectors import make_vectors, write_check, write_vectors
 from a2d.wordlength.choose import Proof, prove
-from a2d.wordlength.formats import Number
-from a2d.wordlength.structures import TITLES
-
-FLAGGED_DB = 0.1  # rounding that moves the response by more is said to be too much
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,19 +65,21 @@ def deliver(
     RoundingError
         The number format cannot carry the coefficients at one of the rates.
     """
-    number, structure = number_of(design.firmware), _structure(design.firmware)
-    together = design.firmware.rounding == "together"
-    proofs = [
-        prove(twin, number, structure, together=together, band_hz=band)
-        for twin, band in zip(twins, bands_hz, strict=True)
-    ]
-    rounded = tuple(rounded_twin(twin, proof) for twin, proof in zip(twins, proofs, strict=True))
+    firmware = design.firmware
+    plan = make_plan(firmware, twins, bands_hz)
+    together = firmware.rounding == "together"
+    proofs = tuple(
+        prove(twin, plan.number, plan.structure, together=together, band_hz=band)
+        for twin, band in zip(plan.twins, bands_hz, strict=True)
+    )
+    rounded = tuple(rounded_twin(twin, proof) for twin, proof in zip(plan.twins, proofs, strict=True))
     comparisons = tuple(compare(chain, twin, band) for twin, band in zip(rounded, bands_hz, strict=True))
-    header = _header(design, sha256, number, structure, rounded, proofs, comparisons)
+    header = _header(design, sha256, plan, rounded, proofs, comparisons)
+    warnings = (words.warning(twin, proof, plan) for twin, proof in zip(plan.twins, proofs, strict=True))
     return Delivery(
-        files={f"{design.design.name}.h": write_header(header)},
-        lines=tuple(_line(twin, proof) for twin, proof in zip(twins, proofs, strict=True)),
-        warnings=tuple(_warning(t, p) for t, p in zip(twins, proofs, strict=True) if p.error_db > FLAGGED_DB),
+        files=_files(firmware, header, proofs),
+        lines=words.lines(plan, proofs, firmware.sample_word.fraction_bits),
+        warnings=tuple(warning for warning in warnings if warning is not None),
         header=header,
         twins=rounded,
         comparisons=comparisons,
@@ -85,15 +87,17 @@ def deliver(
     )
 
 
-def number_of(firmware: Firmware) -> Number:
-    """The number format that a design asks for."""
-    if isinstance(firmware.number, FixedNumber):
-        return Number("fixed", firmware.number.bits, firmware.number.fraction_bits)
-    return Number(firmware.number)
-
-
-def _structure(firmware: Firmware) -> str:
-    return firmware.chosen_structure
+def _files(firmware: Firmware, header: Header, proofs: tuple[Proof, ...]) -> dict[str, str]:
+    files = {f"{header.name}.h": write_header(header)}
+    arithmetic = arithmetic_of(header, firmware.overflow, firmware.sample_rounding)
+    if firmware.kernel:
+        files[f"{header.name}_kernel.h"] = write_kernel(header, arithmetic)
+    if firmware.test_vectors:
+        vectors = make_vectors(tuple(proof.rounded for proof in proofs), arithmetic)
+        files[f"{header.name}_vectors.h"] = write_vectors(header, vectors)
+    if firmware.kernel and firmware.test_vectors:
+        files[f"{header.name}_check.c"] = write_check(header)
+    return files
 
 
 def rounded_twin(twin: Twin, proof: Proof) -> Twin:
@@ -104,23 +108,22 @@ def rounded_twin(twin: Twin, proof: Proof) -> Twin:
 def _header(
     design: Design,
     sha256: str,
-    number: Number,
-    structure: str,
+    plan: Plan,
     twins: tuple[Twin, ...],
-    proofs: list[Proof],
+    proofs: tuple[Proof, ...],
     comparisons: tuple[Comparison, ...],
 ) -> Header:
-    firmware, fixed = design.firmware, number.kind == "fixed"
+    firmware, fixed = design.firmware, plan.number.kind == "fixed"
     return Header(
         name=design.design.name,
         title=design.design.title,
         sha256=sha256,
         section_names=twins[0].names,
         f0_hz=tuple(float(f) for f in twins[0].match_hz),
-        number=number,
+        number=plan.number,
         tables=tuple(_table(t, p, c) for t, p, c in zip(twins, proofs, comparisons, strict=True)),
-        structure=structure,
-        error_feedback=firmware.error_feedback,
+        structure=plan.structure,
+        error_feedback=plan.error_feedback,
         order=firmware.order,
         feedback=firmware.feedback,
         sample_bits=firmware.sample_word.bits if fixed else 0,
@@ -149,22 +152,3 @@ def proved_errors(comparison: Comparison) -> tuple[ProvedError, ...]:
         ("group_delay", "us", comparison.group_delay_us),
     )
     return tuple(ProvedError(quantity, unit, float(w.worst), float(w.at_hz)) for quantity, unit, w in found)
-
-
-def _line(twin: Twin, proof: Proof) -> str:
-    rounded = proof.rounded
-    loss = f", shift {rounded.shift} ({rounded.shift} bits lost)" if rounded.shift else ""
-    gain = f", output shift {rounded.output_shift}" if rounded.output_shift else ""
-    return (
-        f"{twin.sample_rate_hz:g} Hz: {rounded.number}, {TITLES[rounded.structure]}{loss}{gain}: "
-        f"rounding moves the level by at most {proof.error_db:.2g} dB ({proof.nearest_db:.2g} dB each alone), "
-        f"margin to the unit circle {proof.margin:.3g} ({proof.exact_margin:.3g} before)"
-    )
-
-
-def _warning(twin: Twin, proof: Proof) -> str:
-    rounded = proof.rounded
-    return (
-        f"rounding to {rounded.number} in {TITLES[rounded.structure]} moves the response by {proof.error_db:.2g} dB at "
-        f"{twin.sample_rate_hz:g} Hz (allowed {FLAGGED_DB:g} dB)"
-    )

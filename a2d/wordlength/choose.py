@@ -17,6 +17,7 @@ from a2d.wordlength.stability import is_stable, margin_to_circle
 from a2d.wordlength.structures import STRUCTURES, TITLES
 
 UNHEARD_DB = 1e-4  # nearest rounding is left alone below this: nothing is left to gain by a search
+INAUDIBLE_DB = 1e-3  # bits are given up for a large numerator up to this; moving its gain costs noise instead
 ACCEPTED_DB = 0.01  # what a format or structure may move the response to be advised
 REFUSED_DB = 1.0  # a stable neighbour of an unstable rounding is no rounding of the design when it is further off
 
@@ -68,35 +69,55 @@ def prove(twin: Twin, number: Number, structure: str, *, together: bool, band_hz
     RoundingError
         It is unstable after rounding, or does not fit; the message says what carries it.
     """
-    band = rounding_band_hz(twin.sos, twin.sample_rate_hz, band_hz)
     try:
-        return _prove(twin.sos, twin.names, number, structure, twin.sample_rate_hz, band, together)
+        return prove_or_refuse(twin, number, structure, together=together, band_hz=band_hz)
     except RoundingError as error:
-        advice = alternatives(twin, number, structure, band)
+        advice = alternatives(twin, number, structure, band_hz)
         raise RoundingError(f"at {twin.sample_rate_hz:g} Hz {error}; {advice}") from None
 
 
-def _prove(
-    sos: FloatArray,
-    names: tuple[str, ...],
-    number: Number,
-    structure: str,
-    rate_hz: float,
-    band_hz: tuple[float, float],
-    together: bool,
+def prove_or_refuse(
+    twin: Twin, number: Number, structure: str, *, together: bool, band_hz: tuple[float, float]
 ) -> Proof:
-    rounded = round_nearest(sos, number, structure)
+    """`prove`, whose error says only what is wrong."""
+    sos, rate_hz = twin.sos, twin.sample_rate_hz
+    band = rounding_band_hz(sos, rate_hz, band_hz)
+    rounded, nearest_db = _nearest(sos, number, structure, rate_hz, band)
     stable = is_stable(rounded.values, structure)
-    nearest_db = deviation_db(sos, rounded.sos, rate_hz, band_hz) if np.all(stable) else np.inf
     error_db = nearest_db
     if together and nearest_db > UNHEARD_DB:
-        searched = round_together(rounded, sos, rate_hz, band_hz)
-        searched_db = deviation_db(sos, searched.sos, rate_hz, band_hz)
+        searched = round_together(rounded, sos, rate_hz, band)
+        searched_db = deviation_db(sos, searched.sos, rate_hz, band)
         if searched_db < nearest_db:
             rounded, error_db = searched, searched_db
-    _refuse_unstable(rounded, stable, error_db, names)
+    _refuse_unstable(rounded, stable, error_db, twin.names)
     margins = margin_to_circle(rounded.sections)
     return Proof(rounded, nearest_db, error_db, float(np.min(margins)), float(np.min(margin_to_circle(sos))))
+
+
+def _nearest(
+    sos: FloatArray, number: Number, structure: str, rate_hz: float, band_hz: tuple[float, float]
+) -> tuple[Rounded, float]:
+    """The nearest rounding and its level error in dB, infinite when unstable.
+
+    A table gives up bits for a large numerator where no one hears it; where one would, the gain is moved instead.
+    """
+    moved = round_nearest(sos, number, structure)
+    if not np.any(moved.moved):
+        return moved, _level_error(sos, moved, rate_hz, band_hz)
+    try:
+        shifted = round_nearest(sos, number, structure, move_gain=False)
+    except RoundingError:
+        return moved, _level_error(sos, moved, rate_hz, band_hz)
+    error = _level_error(sos, shifted, rate_hz, band_hz)
+    if error <= INAUDIBLE_DB:
+        return shifted, error
+    return moved, _level_error(sos, moved, rate_hz, band_hz)
+
+
+def _level_error(sos: FloatArray, rounded: Rounded, rate_hz: float, band_hz: tuple[float, float]) -> float:
+    stable = np.all(is_stable(rounded.values, rounded.structure))
+    return deviation_db(sos, rounded.sos, rate_hz, band_hz) if stable else np.inf
 
 
 def _refuse_unstable(rounded: Rounded, stable: BoolArray, error_db: float, names: tuple[str, ...]) -> None:
@@ -114,9 +135,7 @@ def alternatives(twin: Twin, number: Number, structure: str, band_hz: tuple[floa
     offers = []
     for other_number, other_structure in _other_choices(number, structure):
         try:
-            proof = _prove(
-                twin.sos, twin.names, other_number, other_structure, twin.sample_rate_hz, band_hz, together=True
-            )
+            proof = prove_or_refuse(twin, other_number, other_structure, together=True, band_hz=band_hz)
         except RoundingError:
             continue
         if proof.error_db <= ACCEPTED_DB:

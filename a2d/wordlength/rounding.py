@@ -63,8 +63,13 @@ class Rounded:
         return sections
 
 
-def round_nearest(sos: FloatArray, number: Number, structure: str) -> Rounded:
+def round_nearest(sos: FloatArray, number: Number, structure: str, *, move_gain: bool = True) -> Rounded:
     """Each coefficient of sections `sos` [S, 6] rounded to the nearest number of the format.
+
+    In the direct forms one number of fraction bits holds for the whole fixed-point table. With `move_gain` it is as
+    large as the feedback coefficients allow: a numerator that would need more integer bits is divided by a power of
+    two, sections behind it that have room take the gain back, and what is left becomes the output's shift. Without it
+    the numerators count too, and all words give up bits for the largest.
 
     Raises
     ------
@@ -77,7 +82,7 @@ def round_nearest(sos: FloatArray, number: Number, structure: str) -> Rounded:
     if structure == "delta":
         fractions = own_fractions(values, number.bits)
         return Rounded(number, structure, to_words(values, fractions), fractions, _none_moved(values))
-    return _shared_fraction(values, number, structure)
+    return _shared_fraction(values, number, structure, move_gain)
 
 
 def to_words(values: FloatArray, fractions: IntArray) -> FloatArray:
@@ -106,14 +111,13 @@ def _floating(values: FloatArray, number: Number, structure: str) -> Rounded:
     return Rounded(number, structure, words, np.zeros(values.shape, dtype=np.int64), _none_moved(values))
 
 
-def _shared_fraction(values: FloatArray, number: Number, structure: str) -> Rounded:
-    """One number of fraction bits for the whole table, as large as the feedback coefficients allow.
-
-    A numerator that would need more integer bits than they do is divided by a power of two instead; sections behind it
-    that have room take the gain back, and what is left becomes the output's shift.
-    """
+def _shared_fraction(values: FloatArray, number: Number, structure: str, move_gain: bool) -> Rounded:
     shift = _smallest_shift(values[:, 3:], number, symmetric=True)
-    moved = moved_gain(values[:, :3], number, number.fraction - shift)
+    moved = _none_moved(values)
+    if move_gain:
+        moved = moved_gain(values[:, :3], number, number.fraction - shift)
+    else:
+        shift = max(shift, _smallest_shift(values[:, :3], number, symmetric=False))
     scaled = values.copy()
     scaled[:, :3] = np.ldexp(scaled[:, :3], moved[:, np.newaxis].astype(np.int32))
     fractions = np.full(values.shape, number.fraction - shift, dtype=np.int64)
