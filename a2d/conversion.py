@@ -4,14 +4,13 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-import numpy as np
-
 from a2d.analog.build import build_chain
 from a2d.analog.chain import AnalogChain
-from a2d.arrays import FloatArray
 from a2d.compare.errors import Comparison, band_of, compare, compare_sections
 from a2d.compare.verdict import Breach, judge
+from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
 from a2d.design.model import Design
+from a2d.digital.match import match_points
 from a2d.digital.twin import Twin, make_twin
 
 
@@ -69,13 +68,9 @@ def convert_at(design: Design, chain: AnalogChain, sample_rate_hz: float) -> Jud
     low, high = (float(f) for f in band_of(sample_rate_hz, stated))
     entries = [design.sections[owner] for owner in chain.owners]
     methods = [entry.method or design.design.method for entry in entries]
-    twin = make_twin(chain, sample_rate_hz, method=methods, match_hz=_match_points(design, chain), band_hz=(low, high))
+    found = [isinstance(entry, (NetworkSection, CircuitSection, BankSection)) for entry in entries]
+    match = match_points(chain.f0_hz, [entry.match for entry in entries], found, (low, high))
+    twin = make_twin(chain, sample_rate_hz, method=methods, match_hz=match, band_hz=(low, high))
     comparison = compare(chain, twin, (low, high))
     sections = compare_sections(chain, twin, (low, high)) if len(twin) == len(chain) else ()
     return Judged(twin, comparison, sections, judge(comparison, design.limits))
-
-
-def _match_points(design: Design, chain: AnalogChain) -> FloatArray:
-    """Each section's match frequency: the one that the file states, else its f0; Hz, shape [S]."""
-    stated = [design.sections[owner].match for owner in chain.owners]
-    return np.array([f0 if match is None else match for match, f0 in zip(stated, chain.f0_hz, strict=True)])

@@ -9,12 +9,13 @@ from typing import Any, get_args, get_origin
 
 import msgspec
 
+from a2d.analog.circuits import CIRCUITS
 from a2d.analog.kinds import KINDS
 from a2d.commands.terminal import console
 from a2d.design.quantities import Quantity
 from a2d.design.schema import design_schema
 from a2d.design.section import Section
-from a2d.design.structs import nearest
+from a2d.design.structs import DesignStruct, nearest
 from a2d.errors import ParameterError
 
 HELP = "show section kinds and circuits, their parameters and transfer functions; --schema for editors"
@@ -32,21 +33,23 @@ def run(args: argparse.Namespace) -> int:
     if args.schema:
         print(json.dumps(design_schema(), indent=1, ensure_ascii=False))
         return 0
-    entries = {name: (kind.equation, parameters(Section.by_kind[name])) for name, kind in KINDS.items()}
+    entries = {name: ([kind.equation], parameters(Section.by_kind[name])) for name, kind in KINDS.items()}
+    entries |= {
+        name: ([circuit.equation, circuit.formulas], parameters(circuit.parts)) for name, circuit in CIRCUITS.items()
+    }
     unknown = next((name for name in args.names if name not in entries), None)
     if unknown is not None:
         raise ParameterError(f"there is no kind or circuit {unknown!r}{nearest(unknown, entries)}")
     out = console()
     for name in args.names or entries:
-        equation, lines = entries[name]
+        equations, lines = entries[name]
         out.print(name, style="bold")
-        out.print(f"    {equation}")
-        for line in lines:
+        for line in [*filter(None, equations), *lines]:
             out.print(f"    {line}")
     return 0
 
 
-def parameters(struct: type[Section]) -> list[str]:
+def parameters(struct: type[DesignStruct]) -> list[str]:
     """One line a parameter: name, what it takes, and what it is when absent."""
     hints = typing.get_type_hints(struct)
     return [
@@ -78,6 +81,8 @@ def _takes(wanted: Any) -> str:
     options = [t for t in get_args(wanted) if t is not type(None)]
     if options:
         return " or ".join(_takes(t) for t in options)
+    if isinstance(wanted, type) and issubclass(wanted, DesignStruct):
+        return f"{{ {', '.join(f.encode_name for f in msgspec.structs.fields(wanted))} }}"
     if isinstance(wanted, type) and issubclass(wanted, Quantity):
         return (wanted.__doc__ or "").strip().rstrip(".").lower() + (f" ({wanted.unit})" if wanted.unit else "")
     return {int: "whole number", str: "text", bool: "true | false"}.get(wanted, getattr(wanted, "__name__", "").lower())

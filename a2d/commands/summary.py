@@ -7,10 +7,12 @@ from rich.console import RenderableType
 
 from a2d.analog.kinds import peaking_w3c_q
 from a2d.analog.kinds.equalisers import equivalent_q
+from a2d.commands.circuits import circuit_notes
 from a2d.commands.terminal import hertz, table
 from a2d.compare.errors import Worst
 from a2d.conversion import Conversion
 from a2d.design import kinds
+from a2d.design.hardware import BankSection, NetworkSection
 from a2d.design.section import Section
 
 
@@ -106,7 +108,7 @@ Q_MEANINGS = {
 def notes(conversion: Conversion) -> list[str]:
     """What the file left unsaid and the output must say."""
     shelves = [e for e in conversion.design.sections if isinstance(e, (kinds.LowShelf, kinds.HighShelf))]
-    return [
+    return circuit_notes(conversion) + [
         f"{e.name}: shelf {'of first order' if e.order == 1 else 'as in the W3C note'}, half the gain in dB at f0"
         for e in shelves
     ]
@@ -114,7 +116,7 @@ def notes(conversion: Conversion) -> list[str]:
 
 def describe(entry: Section) -> str:
     """A section in a few words: `peaking +4.5 dB, Q 1.4`."""
-    kind = getattr(entry, "kind", None) or getattr(entry, "circuit", None) or type(entry).__name__.lower()
+    kind = getattr(entry, "kind", None) or getattr(entry, "circuit", None) or _parts_or_bands(entry)
     words = [str(kind)]
     if getattr(entry, "response", None):
         words.append(f"{entry.response} of order {entry.order}")  # type: ignore[attr-defined]
@@ -124,6 +126,12 @@ def describe(entry: Section) -> str:
     if entry.factor != 1.0:
         details.append(f"× {float(entry.factor):g}")
     return f"{' '.join(words)} {', '.join(d for d in details if d)}".strip()
+
+
+def _parts_or_bands(entry: Section) -> str:
+    if isinstance(entry, NetworkSection):
+        return f"network of {len(entry.network.parts)} parts"
+    return f"bank of {len(entry.band)} bands" if isinstance(entry, BankSection) else type(entry).__name__.lower()
 
 
 def _detail(entry: Section, key: str) -> str:

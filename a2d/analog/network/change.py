@@ -27,3 +27,10 @@ def with_ends(network: Network, source: float | None, load: float | None) -> Net
     if load is not None:
         exit_ = Output(node=exit_.node, minus=exit_.minus, load=Ohm(load))
     return msgspec.structs.replace(network, input=entry, output=exit_)
+
+
+def without_ends(network: Network, source: bool = False, load: bool = False) -> Network:
+    """The network driven by an ideal source, without its load, or both."""
+    entry = Input(node=network.entry.node) if source else network.entry
+    exit_ = Output(node=network.exit.node, minus=network.exit.minus) if load else network.exit
+    return msgspec.structs.replace(network, input=entry, output=exit_)

@@ -14,6 +14,7 @@ from a2d.arrays import ComplexArray, FloatArray
 _SAME = 1e-9  # relative distance below which a pole and a zero cancel: their rounding error with room to spare
 _APART = 100.0  # real poles further apart than this make two sections, each matched at its own frequency
 _GRID_HZ = np.geomspace(0.1, 1e6, 71)
+_AUDIO_HZ = np.geomspace(20.0, 20e3, 61)
 _LEAST_RAD_S = 1e-3  # stands for a root at zero where distances are counted in octaves
 
 
@@ -53,7 +54,8 @@ def second_order_sections(roots: ZeroPole) -> tuple[FloatArray, FloatArray]:
     """b, a [S, 3] (coefficients of s², s, 1) of sections whose product is H(s), by rising frequency.
 
     Conjugates share a section, and so do neighbouring real poles up to a factor of 100 apart; zeros go to the nearest
-    pole that has room. Each section's largest response is 1 but for the first, which has the gain that remains.
+    pole that has room. Each section's largest response from 20 Hz to 20 kHz is 1 but for the first, which has the
+    gain that remains.
     """
     pairs = [[p, p.conjugate()] for p in roots.poles if p.imag > 0.0]
     zero_pairs = [z for z in roots.zeros if z.imag > 0.0]
@@ -99,8 +101,8 @@ def _polynomial(roots: Sequence[complex]) -> FloatArray:
 
 
 def _levelled(b: FloatArray, a: FloatArray, roots: ZeroPole) -> FloatArray:
-    """The numerators scaled: each section's peak 1, the first with what the product then lacks."""
-    peaks = np.abs(section_response(b, a, _GRID_HZ)).max(axis=-1)
+    """The numerators scaled: each section's peak in the audio band 1, the first with what the product then lacks."""
+    peaks = np.abs(section_response(b, a, _AUDIO_HZ)).max(axis=-1)
     scaled = b / peaks[:, np.newaxis]
     product = np.prod(section_response(scaled, a, _GRID_HZ), axis=0)
     largest = int(np.argmax(np.abs(product)))

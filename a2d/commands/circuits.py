@@ -1,0 +1,73 @@
+"""What the terminal and the report say of sections that are given by component values."""
+
+from __future__ import annotations
+
+import math
+
+from a2d.analog.hardware import network_of
+from a2d.analog.insight import Change, Figures, changes, figures
+from a2d.analog.network.solve import solve_network
+from a2d.commands.terminal import hertz
+from a2d.conversion import Conversion, Judged
+from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
+
+
+def circuit_notes(conversion: Conversion) -> list[str]:
+    """f0, Q and gain of each section, what cancels, what op-amps and ends change, and match points that were moved."""
+    lines = _figure_lines(conversion)
+    band = conversion.judged[0].comparison.band_hz
+    for entry in conversion.design.sections:
+        if isinstance(entry, (NetworkSection, CircuitSection)):
+            network = network_of(entry)
+            lines += [f"{entry.name}: {note}" for note in solve_network(network).notes]
+            lines += [f"{entry.name}: {_change(change)}" for change in changes(network, band)]
+    return lines + _moved(conversion)
+
+
+def _is_hardware(conversion: Conversion, index: int) -> bool:
+    entry = conversion.design.sections[conversion.chain.owners[index]]
+    return isinstance(entry, (NetworkSection, CircuitSection, BankSection))
+
+
+def _figure_lines(conversion: Conversion) -> list[str]:
+    chain = conversion.chain
+    rows = [i for i in range(len(chain)) if _is_hardware(conversion, i)]
+    return [f"{chain.names[i]}: {_figures(figures(chain.b[i], chain.a[i]))}" for i in rows]
+
+
+def _figures(f: Figures) -> str:
+    if f.f0_hz is None:
+        return f"a plain gain of {_decibels(f.gain_0_db)}"
+    poles = f"f0 {hertz(f.f0_hz)}, " + ("first order" if f.q is None else f"Q {f.q:.4g}")
+    gains = f"{_decibels(f.gain_0_db)} at 0 Hz, {_decibels(f.gain_f0_db)} at f0, {_decibels(f.gain_inf_db)} far above"
+    return f"{poles}; gain {gains}"
+
+
+def _decibels(value: float) -> str:
+    return "none" if math.isinf(value) else f"{round(value, 2) + 0.0:+.2f} dB"
+
+
+def _change(change: Change) -> str:
+    return f"{change.what}: {change.worst_db:+.2g} dB at {hertz(change.at_hz)}"
+
+
+def _moved(conversion: Conversion) -> list[str]:
+    """Sections whose own f0 lies above the band and that were matched at its end, one line a rate."""
+    lines = []
+    for judged in conversion.judged:
+        names = _above_band(conversion, judged)
+        if names:
+            rate, top = hertz(judged.twin.sample_rate_hz), hertz(judged.comparison.band_hz[1])
+            lines.append(
+                f"at {rate} exact at the band's upper end, {top}, for an f0 above the band: {', '.join(names)}"
+            )
+    return lines
+
+
+def _above_band(conversion: Conversion, judged: Judged) -> list[str]:
+    chain, top = conversion.chain, judged.comparison.band_hz[1]
+    if len(judged.twin) != len(chain):
+        return []
+    stated = [conversion.design.sections[owner].match is not None for owner in chain.owners]
+    above = [_is_hardware(conversion, i) and not stated[i] and chain.f0_hz[i] > top for i in range(len(chain))]
+    return [f"{chain.names[i]} ({hertz(float(chain.f0_hz[i]))})" for i in range(len(chain)) if above[i]]
