@@ -15,6 +15,8 @@ from a2d.design import kinds
 from a2d.design.hardware import BankSection, NetworkSection
 from a2d.design.section import Section
 
+EXACT_METHODS = ("bilinear", "magnitude_matched")  # the others have no frequency at which they are exact
+
 
 def sections_table(conversion: Conversion) -> RenderableType:
     """One row a section: what it is, where it is exact, and its own worst magnitude error at each rate."""
@@ -33,9 +35,10 @@ def sections_table(conversion: Conversion) -> RenderableType:
 
 
 def _match(conversion: Conversion, index: int) -> str:
-    """Where a section is exact, when twin and chain have one section each for each."""
+    """Where a section is exact, when twin and chain have one section each for each and its method has such a point."""
     twin = conversion.judged[0].twin
-    return hertz(float(twin.match_hz[index])) if len(twin) == len(conversion.chain) else ""
+    matched = len(twin) == len(conversion.chain) and twin.methods[index] in EXACT_METHODS
+    return hertz(float(twin.match_hz[index])) if matched else ""
 
 
 def errors_table(conversion: Conversion) -> RenderableType:

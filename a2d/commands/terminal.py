@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import sys
 from collections.abc import Iterable, Sequence
-from typing import TextIO
+from typing import Literal, TextIO
 
 from rich import box
 from rich.console import Console
@@ -21,11 +21,16 @@ def console(stream: TextIO | None = None) -> Console:
     return Console(file=target, width=width, highlight=False, soft_wrap=False, emoji=False, markup=False)
 
 
-def table(title: str, columns: Sequence[str], rows: Iterable[Sequence[str]], *, left: int = 1) -> Table:
-    """A table; the first `left` columns are aligned left, the others right. Cells are plain text."""
+def table(
+    title: str, columns: Sequence[str], rows: Iterable[Sequence[str]], *, left: int = 1, folding: Sequence[int] = (1,)
+) -> Table:
+    """A table; the first `left` columns are aligned left, the others right, and only those in `folding` break their
+    lines. Cells are plain text.
+    """
     built = Table(title=Text(title), box=box.SIMPLE_HEAD, title_justify="left", pad_edge=False, title_style="bold")
     for index, name in enumerate(columns):
-        built.add_column(Text(name), justify="left" if index < left else "right", overflow="fold")
+        justify: Literal["left", "right"] = "left" if index < left else "right"
+        built.add_column(Text(name), justify=justify, overflow="fold", no_wrap=index not in folding)
     for row in rows:
         built.add_row(*(Text(cell) for cell in row))
     return built
