@@ -62,6 +62,14 @@ def _low_shelf(v: FloatArray) -> Sections:
     return equalisers.low_shelf(np.exp(v[..., 0]), v[..., 2], np.exp(v[..., 1]))
 
 
+def _high_shelf(v: FloatArray) -> Sections:
+    return equalisers.high_shelf(np.exp(v[..., 0]), v[..., 2], np.exp(v[..., 1]))
+
+
+def _high_shelf_1(v: FloatArray) -> Sections:
+    return equalisers.high_shelf(np.exp(v[..., 0]), v[..., 1])
+
+
 def _low_shelf_1(v: FloatArray) -> Sections:
     return equalisers.low_shelf(np.exp(v[..., 0]), v[..., 1])
 
@@ -80,6 +88,8 @@ SHAPES: dict[str, Shape] = {
     "peaking": Shape("peaking", 2, ("f0", "q", "gain"), _peaking),
     "low_shelf_1": Shape("low_shelf", 1, ("f0", "gain"), _low_shelf_1),
     "low_shelf": Shape("low_shelf", 2, ("f0", "q", "gain"), _low_shelf, q_range=SHELF_Q),
+    "high_shelf_1": Shape("high_shelf", 1, ("f0", "gain"), _high_shelf_1),
+    "high_shelf": Shape("high_shelf", 2, ("f0", "q", "gain"), _high_shelf, q_range=SHELF_Q),
     "lowpass_1": Shape("lowpass", 1, ("f0",), _one(filters.lowpass)),
     "lowpass": Shape("lowpass", 2, ("f0", "q"), _two(filters.lowpass)),
     "highpass_1": Shape("highpass", 1, ("f0",), _one(filters.highpass)),
@@ -91,7 +101,9 @@ SHAPES: dict[str, Shape] = {
     "pole_zero": Shape("pole_zero", 2, ("f0", "q", "zero_f0", "zero_q"), _pole_zero),
 }  # fmt: skip
 FREE = "pole_zero"  # the shape that no engineer would name: the last resort
-# A high shelf is a low shelf of the opposite gain times a plain gain, which the fit has anyway.
+# A high shelf is a low shelf of the opposite gain times a plain gain, which the fit has anyway: one is searched.
+TWINS = {"low_shelf_1": "high_shelf_1", "low_shelf": "high_shelf"}
+SEARCHED = tuple(name for name in SHAPES if name not in TWINS.values())
 
 
 def limits(shape: Shape, f_hz: FloatArray) -> tuple[FloatArray, FloatArray]:
