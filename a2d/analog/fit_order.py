@@ -18,6 +18,7 @@ from a2d.arrays import FloatArray
 
 NEEDED_GAIN = 6.0  # of the information criterion: a section that explains less is noise
 DELAY_SEARCH_SECONDS = 0.2
+DELAYS_A_TURN = 64
 NOTCH_FROM_DB = -24.0  # a cut so deep is meant as a notch
 FIRST_ORDER = ("low_shelf_1", "lowpass_1", "highpass_1")
 MERGE_OCTAVES = 1.5
@@ -38,14 +39,15 @@ def level_first(problem: Problem, coupling: bool, effort: Effort, most: int) -> 
         return all_at_once(problem, coupling, effort, most)
     shapes = tuple(name for name in effort.shapes if not SHAPES[name].needs_phase)
     silent = replace(problem, measured=replace(measured, phase=None))
-    model, _ = order_sweep(silent, first_model(silent, coupling), replace(effort, shapes=shapes, kept=2), most)
+    model, by_level = order_sweep(silent, first_model(silent, coupling), replace(effort, shapes=shapes, kept=2), most)
     _, left = misfit(problem, evaluate(model, measured.f_hz)[0])
     delay, turn = _coarse_delay(replace(measured, phase=left), problem.weights)
     theta, free = model.theta.copy(), model.free.copy()
     theta[1], free[1] = 2.0 * np.pi * delay * measured.f_hz[-1], True
     theta[2], free[2] = (0.01, True) if coupling else (0.0, False)
     model, _ = solve(problem, replace(model, theta=theta, free=free, inverted=turn < 0.0))
-    return order_sweep(problem, model, effort, most)
+    model, together = order_sweep(problem, model, effort, most)
+    return model, by_level + together
 
 
 def order_sweep(problem: Problem, first: Model, effort: Effort, most: int) -> tuple[Model, list[OrderTried]]:
@@ -89,9 +91,10 @@ def _coarse_delay(measured: MeasuredResponse, weights: FloatArray) -> tuple[floa
     step = 0.4 / f[-1]
     spacing = np.diff(f)  # an even grid of step d cannot tell delays apart that differ by 1/d
     span = min(DELAY_SEARCH_SECONDS, 0.5 / float(spacing.min()), 20.0 / float(spacing.max()))
-    delays = np.arange(-0.5 * span, span, step)
-    unit = w * np.exp(1j * measured.phase)
-    sums = np.concatenate([np.exp(2j * np.pi * part[:, np.newaxis] * f) @ unit for part in np.array_split(delays, 64)])
+    starts = np.arange(-0.5 * span, span, DELAYS_A_TURN * step)
+    turns = np.exp(2j * np.pi * step * np.arange(DELAYS_A_TURN)[:, np.newaxis] * f)
+    sums = np.exp(2j * np.pi * starts[:, np.newaxis] * f) * (w * np.exp(1j * measured.phase)) @ turns.T
+    delays, sums = (starts[:, np.newaxis] + step * np.arange(DELAYS_A_TURN)).ravel(), sums.ravel()
     best = int(np.argmax(np.abs(sums)))
     return float(delays[best]), float(sums[best].real)
 

@@ -51,9 +51,11 @@ def run(args: argparse.Namespace) -> int:
         measured = measured.between(low, high)
     rates = [float(parse(rate, SampleRate)) for rate in args.rate]
     fit, names = _known(args, measured) if args.design else _unknown(args, measured)
-    text = design_text(fit, args.name, rates, title=f"Fitted to {args.response.name}", names=names, with_gain=args.keep_gain)
+    text = design_text(
+        fit, args.name, rates, title=f"Fitted to {args.response.name}", names=names, with_gain=args.keep_gain
+    )
     files: dict[str, bytes | str] = {f"{args.name}.toml": text, f"{args.name}.residual.csv": residual_csv(fit)}
-    from a2d.report.fit_plot import fit_plot  # noqa: PLC0415 - matplotlib only once there is something to draw
+    from a2d.report.fit_plot import fit_plot
 
     files |= fit_plot(fit, args.name)
     write_all(args.out, files)
