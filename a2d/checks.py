@@ -43,8 +43,8 @@ def whole(name: str, value: int, low: int, high: int) -> int:
     return int(value)
 
 
-def below_half_rate(name: str, frequency_hz: ArrayLike, sample_rate_hz: ArrayLike) -> None:
-    """Refuse frequencies at or above half the sample rate."""
+def below_half_rate(name: str, frequency_hz: ArrayLike, sample_rate_hz: ArrayLike, remedy: str = "") -> None:
+    """Refuse frequencies at or above half the sample rate; the message ends with what can be done."""
     frequency, rate = np.broadcast_arrays(positive(name, frequency_hz, "Hz"), positive("sample rate", sample_rate_hz))
     bad = frequency >= rate / 2.0
     if np.any(bad):
@@ -52,6 +52,7 @@ def below_half_rate(name: str, frequency_hz: ArrayLike, sample_rate_hz: ArrayLik
         raise ParameterError(
             f"{name} must lie below half the sample rate "
             f"({frequency[first]:g} Hz at {rate[first]:g} Hz, allowed below {rate[first] / 2:g} Hz)"
+            + (f"; {remedy}" if remedy else "")
         )
 
 

@@ -28,7 +28,8 @@ def main(arguments: Sequence[str] | None = None) -> int:
         status: int = args.run(args)
         sys.stdout.flush()
     except A2dError as error:
-        print(f"a2d {args.command}: {error}", file=sys.stderr)
+        for line in str(error).splitlines():  # a design's faults, one a line
+            print(f"a2d {args.command}: {line}", file=sys.stderr)
         return BAD_INPUT
     except BrokenPipeError:  # the reader of the output went away, as `head` does
         sys.stderr.close()

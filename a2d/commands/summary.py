@@ -14,8 +14,7 @@ from a2d.conversion import Conversion
 from a2d.design import kinds
 from a2d.design.hardware import BankSection, NetworkSection
 from a2d.design.section import Section
-
-EXACT_METHODS = ("bilinear", "magnitude_matched")  # the others have no frequency at which they are exact
+from a2d.digital.methods import EXACT_AT_MATCH
 
 
 def sections_table(conversion: Conversion) -> RenderableType:
@@ -37,7 +36,7 @@ def sections_table(conversion: Conversion) -> RenderableType:
 def _match(conversion: Conversion, index: int) -> str:
     """Where a section is exact, when twin and chain have one section each for each and its method has such a point."""
     twin = conversion.judged[0].twin
-    matched = len(twin) == len(conversion.chain) and twin.methods[index] in EXACT_METHODS
+    matched = len(twin) == len(conversion.chain) and twin.methods[index] in EXACT_AT_MATCH
     return hertz(float(twin.match_hz[index])) if matched else ""
 
 

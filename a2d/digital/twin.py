@@ -17,6 +17,7 @@ from a2d.errors import ConversionError, ParameterError
 
 WIDEST_BAND_HZ = (20.0, 20_000.0)
 HIGHEST_BAND_FRACTION = 0.4535  # of the sample rate: 20 kHz at 44.1 kHz, the design's upper end at lower rates
+_MATCH_REMEDY = 'give the section a `match` inside the band, take a higher rate, or method = "minimax"'
 
 
 @dataclass(frozen=True, eq=False)
@@ -133,7 +134,7 @@ def _check_methods(names: Sequence[str], methods: Sequence[str], match: FloatArr
         if method not in METHODS:
             raise ParameterError(f"there is no method {method!r} (allowed: {', '.join(METHODS)})")
         if method in EXACT_AT_MATCH:
-            checks.below_half_rate(f'the match frequency of section "{name}"', f, rate)
+            checks.below_half_rate(f'the match frequency of section "{name}"', f, rate, _MATCH_REMEDY)
 
 
 def _refuse_unfit(chain: AnalogChain) -> None:

@@ -88,7 +88,7 @@ def test_a_limit_is_not_passed_by_rounding_a_figure(design: Path) -> None:
     ("text", "message"),
     [
         ("f0 = 'x'", 'section "presence".f0'),
-        ("f0 = '30 kHz'", "below half the sample rate"),
+        ("f0 = '30 kHz'", "allowed below 24000 Hz); give the section a `match` inside the band, take a higher rate"),
         ("match = '24 kHz'", "below half the sample rate"),
     ],
 )
