@@ -168,3 +168,8 @@ def _section(equations: _Equations, source: int, b: FloatArray, a: FloatArray) -
     else:
         equations.reactances += [(x, x, a[1]), (y, x, -b[1])]
     return y
+
+
+def scaled_bank(bank: Bank, factor: float) -> Bank:
+    """The bank with a factor on the whole."""
+    return replace(bank, mix=bank.mix * factor, direct=bank.direct * factor)

@@ -6,6 +6,7 @@ import argparse
 import sys
 
 from a2d.commands import summary
+from a2d.commands.banks import bank_files
 from a2d.commands.delivery import delivery_of
 from a2d.commands.options import add_design, add_out
 from a2d.commands.terminal import console
@@ -48,6 +49,7 @@ def output_files(
         **delivery.files,
         f"{name}.twin.json": manifest(conversion, source.sha256),
         f"{name}.sos.csv": sos_table(conversion),
+        **bank_files(conversion, source.sha256),
     }
     if args.plots:
         files |= _plots(conversion)

@@ -7,6 +7,7 @@ from rich.console import RenderableType
 
 from a2d.analog.kinds import peaking_w3c_q
 from a2d.analog.kinds.equalisers import equivalent_q
+from a2d.commands.banks import bank_notes
 from a2d.commands.circuits import circuit_notes
 from a2d.commands.terminal import hertz, table
 from a2d.compare.errors import Worst
@@ -110,10 +111,14 @@ Q_MEANINGS = {
 def notes(conversion: Conversion) -> list[str]:
     """What the file left unsaid and the output must say."""
     shelves = [e for e in conversion.design.sections if isinstance(e, (kinds.LowShelf, kinds.HighShelf))]
-    return circuit_notes(conversion) + [
-        f"{e.name}: shelf {'of first order' if e.order == 1 else 'as in the W3C note'}, half the gain in dB at f0"
-        for e in shelves
-    ]
+    return (
+        circuit_notes(conversion)
+        + bank_notes(conversion)
+        + [
+            f"{e.name}: shelf {'of first order' if e.order == 1 else 'as in the W3C note'}, half the gain in dB at f0"
+            for e in shelves
+        ]
+    )
 
 
 def describe(entry: Section) -> str:

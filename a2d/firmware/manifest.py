@@ -6,6 +6,7 @@ import json
 from importlib.metadata import PackageNotFoundError, version
 from typing import Any
 
+from a2d.compare.banks import JudgedBank, parallel_banks
 from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion, Judged
 
@@ -43,6 +44,9 @@ def manifest(conversion: Conversion, sha256: str) -> str:
         },
         "twins": [_twin(judged) for judged in conversion.judged],
     }
+    banks = parallel_banks(conversion.design)
+    if banks:
+        content["banks"] = [_bank(bank) for bank in banks]
     return json.dumps(content, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 
 
@@ -58,6 +62,29 @@ def _twin(judged: Judged) -> dict[str, Any]:
         "section_comparisons": [_comparison(section) for section in judged.sections],
         "within_limits": not judged.breaches,
         "broken_limits": [str(breach) for breach in judged.breaches],
+    }
+
+
+def _bank(judged: JudgedBank) -> dict[str, Any]:
+    """A bank's parallel twins: y = direct·x + Σ mix·band(x)."""
+    return {
+        "name": judged.name,
+        "direct": float(judged.bank.direct),
+        "bands": list(judged.bank.names),
+        "mix": judged.bank.mix.tolist(),
+        "twins": [
+            {
+                "sample_rate_hz": twin.sample_rate_hz,
+                "sos": [band.sos.tolist() for band in twin.bands],
+                "match_hz": [band.match_hz.tolist() for band in twin.bands],
+                "comparison": {
+                    "band_hz": list(comparison.band_hz),
+                    "magnitude_db": _worst(comparison.magnitude_db),
+                    "phase_deg": _worst(comparison.phase_deg),
+                },
+            }
+            for twin, comparison in zip(judged.twins, judged.comparisons, strict=True)
+        ],
     }
 
 

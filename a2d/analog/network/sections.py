@@ -54,8 +54,7 @@ def second_order_sections(roots: ZeroPole) -> tuple[FloatArray, FloatArray]:
     """b, a [S, 3] (coefficients of s², s, 1) of sections whose product is H(s), by rising frequency.
 
     Conjugates share a section, and so do neighbouring real poles up to a factor of 100 apart; zeros go to the nearest
-    pole that has room. Each section's largest response from 20 Hz to 20 kHz is 1 but for the first, which has the
-    gain that remains.
+    pole that has room. Each section has a level of about 1 but for the first, which has the gain that remains.
     """
     pairs = [[p, p.conjugate()] for p in roots.poles if p.imag > 0.0]
     zero_pairs = [z for z in roots.zeros if z.imag > 0.0]
@@ -101,11 +100,20 @@ def _polynomial(roots: Sequence[complex]) -> FloatArray:
 
 
 def _levelled(b: FloatArray, a: FloatArray, roots: ZeroPole) -> FloatArray:
-    """The numerators scaled: each section's peak in the audio band 1, the first with what the product then lacks."""
-    peaks = np.abs(section_response(b, a, _AUDIO_HZ)).max(axis=-1)
-    scaled = b / peaks[:, np.newaxis]
+    """The numerators scaled to a level of 1 (`_level`), the first with what the product then lacks."""
+    scaled = b / _level(b, a)[:, np.newaxis]
     product = np.prod(section_response(scaled, a, _GRID_HZ), axis=0)
     largest = int(np.argmax(np.abs(product)))
     missing = roots.response(_GRID_HZ[largest : largest + 1])[0] / product[largest]
     scaled[0] *= missing.real
     return np.asarray(scaled)
+
+
+def _level(b: FloatArray, a: FloatArray) -> FloatArray:
+    """Of a bell or shelf, the geometric mean of the gains at 0 Hz and far above; else the peak in the audio band."""
+    peak = np.abs(section_response(b, a, _AUDIO_HZ)).max(axis=-1)
+    top = np.where(a[:, 0] != 0.0, 0, np.where(a[:, 1] != 0.0, 1, 2))[:, np.newaxis]
+    high = np.abs(np.take_along_axis(b, top, -1) / np.take_along_axis(a, top, -1))[:, 0]
+    low = np.abs(b[:, 2] / a[:, 2])
+    flat = (np.minimum(low, high) > 0.01 * np.maximum(low, high)) & (low > 0.0)
+    return np.asarray(np.where(flat, np.sqrt(low * high), peak))

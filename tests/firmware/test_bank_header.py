@@ -1,0 +1,109 @@
+"""Banks as parallel branches: the twin against scipy, and its C against a run in Python."""
+
+import json
+import re
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from scipy import signal
+
+from a2d.cli import main
+from a2d.compare.banks import parallel_banks
+from a2d.design.read import parse_design
+from a2d.errors import HeaderError
+from a2d.firmware.bank_header import bank_header, bank_symbol, round_bank
+from tests.support.c_build import COMPILERS, build_and_run
+from tests.support.paths import ROOT
+
+DESIGN = (ROOT / "audio_examples" / "lighthouse_bank.toml").read_text(encoding="utf-8")
+F = np.geomspace(10.0, 20_000.0, 200)
+
+
+@pytest.fixture(scope="module")
+def bank():
+    (judged,) = parallel_banks(parse_design(DESIGN))
+    return judged
+
+
+def test_parallel_twin_is_the_sum_of_scipys_bilinear_bands(bank):
+    """Each band prewarped at its own f0: scipy's bilinear transform with the rate that makes it so."""
+    for twin in bank.twins:
+        rate = twin.sample_rate_hz
+        expected = np.full(len(F), bank.bank.direct, dtype=complex)
+        for mix, sections in zip(bank.bank.mix, bank.bank.bands, strict=True):
+            f0 = float(sections.f0_hz[0])
+            bz, az = signal.bilinear(sections.b[0], sections.a[0], np.pi * f0 / np.tan(np.pi * f0 / rate))
+            expected += mix * signal.freqz(bz, az, F, fs=rate)[1]
+        # freqz adds up polynomials near z = 1: it loses some (rate/f)² roundings, 1e-16·(96000/10)²
+        assert np.abs(twin.response(F) - expected).max() < 2e-8
+
+
+def test_comparison_holds_between_grid_points(bank):
+    f = np.geomspace(20.0, 20_000.0, 20_001)
+    for twin, comparison in zip(bank.twins, bank.comparisons, strict=True):
+        error = 20 * np.log10(np.abs(twin.response(f) / bank.bank.response(f)))
+        assert abs(comparison.magnitude_db.worst) >= np.abs(error).max() - 1e-9
+        assert abs(comparison.magnitude_db.worst) == pytest.approx(np.abs(error).max(), rel=1e-4)
+
+
+def program(symbol, number, rate):
+    word = {"float32": "float", "float64": "double"}[number]
+    return f"""
+#include <stdio.h>
+#include "bank.h"
+int main(void)
+{{
+    {word} state[{symbol.upper()}_SECTIONS][2] = {{{{0}}}};
+    int n;
+    for (n = 0; n < 4000; n++) {{
+        {word} x = n == 0 ? ({word})1 : ({word})0;
+        printf("%.17g\\n", (double){symbol}_sample({symbol}_{rate}, {symbol}_direct, {symbol}_mix, state, x));
+    }}
+    return 0;
+}}
+"""
+
+
+@pytest.mark.parametrize("compiler", COMPILERS)
+@pytest.mark.parametrize("number", ["float32", "float64"])
+def test_the_header_compiles_strictly_and_computes_the_twin(bank, compiler, number, tmp_path):
+    twins = [round_bank(twin, number) for twin in bank.twins]
+    (tmp_path / "bank.h").write_text(bank_header("demo_room", "0" * 64, twins, number))
+    out = build_and_run(compiler, tmp_path / "main.c", program("demo_room", number, 48000))
+    got = np.array([float(x) for x in out.split()])
+    impulse = np.zeros(4000)
+    impulse[0] = 1.0
+    twin = twins[0]
+    expected = twin.direct * impulse
+    for mix, band in zip(twin.mix, twin.bands, strict=True):
+        expected = expected + mix * signal.sosfilt(band.sos, impulse)
+    # float32: a rounding of 6e-8 a sample and branch, fed back by the narrowest band for some 1000 samples
+    assert np.abs(got - expected).max() < (2e-6 if number == "float32" else 1e-13)
+
+
+def test_command_writes_header_and_manifest_and_tells_the_errors(bank, tmp_path, capsys):
+    design = tmp_path / "bank.toml"
+    design.write_text(DESIGN)
+    assert main(["convert", str(design), "--out", str(tmp_path / "out")]) == 0
+    text = " ".join(capsys.readouterr().out.split())
+    assert re.search(r"room in parallel at 48 kHz: [+-][0-9.]+ dB at .* in float32", text)
+    assert (tmp_path / "out" / "lighthouse_bank_room.bank.h").exists()
+    (written,) = json.loads((tmp_path / "out" / "lighthouse_bank.twin.json").read_text())["banks"]
+    assert written["mix"] == bank.bank.mix.tolist()
+    assert np.array(written["twins"][1]["sos"][3]) == pytest.approx(bank.twins[1].bands[3].sos, abs=0)
+
+
+def test_fixed_words_are_refused(bank):
+    with pytest.raises(HeaderError, match="float32 or float64"):
+        round_bank(bank.twins[0], "fixed")
+
+
+def test_two_bands_of_one_c_name_are_refused(bank):
+    twin = replace(bank.twins[0], names=("a-b", "a b", *bank.twins[0].names[2:]))
+    with pytest.raises(HeaderError, match="two bands are called A_B"):
+        bank_header("demo_room", "0" * 64, [twin], "float64")
+
+
+def test_symbol():
+    assert bank_symbol("desk", "room 1") == "desk_room_1"
