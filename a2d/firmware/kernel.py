@@ -19,8 +19,10 @@ _FLOAT_STATES = {"direct_form_1": 4, "transposed_direct_form_2": 2, "delta": 2}
 _LIMITS = {
     "saturate": (
         "    const int64_t highest = @NAME@_HIGHEST;\n"
-        "    sample = sample > highest ? highest : sample;\n"
-        "    return (int32_t)(sample < -highest - 1 ? -highest - 1 : sample);"
+        "    if ((uint64_t)(sample + highest + 1) > (uint64_t)(2 * highest + 1)) {\n"
+        "        return (int32_t)(sample > 0 ? highest : -highest - 1);\n"
+        "    }\n"
+        "    return (int32_t)sample;"
     ),
     "wrap": (
         "    const int64_t half = (int64_t)@NAME@_HIGHEST + 1;\n"

@@ -10,11 +10,13 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from a2d.digital.twin import make_twin
 from a2d.firmware.model import Header
 from a2d.wordlength.arithmetic import Arithmetic
 from a2d.wordlength.simulate_fixed import simulate_fixed
 from a2d.wordlength.simulate_float import simulate_float
 from tests.support.c_build import COMPILERS, SANITIZE, build, program_of
+from tests.support.chains import chain_of
 from tests.support.firmware_cases import (
     NUMBERS,
     ORDERS,
@@ -92,14 +94,14 @@ static int run_{name}(const {word} *in, {word} *out, {word} *first)
 
 
 def program(names: list[tuple[str, str]]) -> str:
-    words = {"float": "f32", "double": "f64", "int32_t": "q16"}
+    used = list(dict.fromkeys(word for _, word in names))
     lines = ["#include <stdio.h>", "#include <string.h>", f"#define SAMPLES {SAMPLES}u"]
     lines += [f'#include "{name}_kernel.h"' for name, _ in names]
     lines += [runner(name, word) for name, word in names]
-    for word in words:
+    for word in used:
         lines.append(f"static {word} in_{word}[SAMPLES], out_{word}[SAMPLES], first_{word}[SAMPLES];")
     lines.append("int main(void)\n{")
-    for word in words:
+    for word in used:
         lines.append(f"    if (fread(in_{word}, sizeof({word}), SAMPLES, stdin) != SAMPLES) return 2;")
     lines += [f"    if (run_{name}(in_{word}, out_{word}, first_{word})) return 3;" for name, word in names]
     return "\n".join([*lines, "    return 0;", "}"]) + "\n"
@@ -128,3 +130,27 @@ def test_every_combination_equals_the_simulation(compiler: str, tmp_path: Path) 
         # x86-64 without contraction rounds each operation as numpy does: equal to the last bit, floating point too
         np.testing.assert_array_equal(got, wanted, err_msg=case_name(number, structure, order, sign))
     assert position == len(done.stdout)
+
+
+@pytest.mark.parametrize("structure", ["df1", "ef2", "tdf2", "delta"])
+def test_wrapping_truncation_and_narrow_samples(structure: str, tmp_path: Path) -> None:
+    """The other signal path: wrap-around, truncation, 16-bit samples; and a section that winds its states up."""
+    form, error_feedback = STRUCTURE_CASES[structure]
+    boost = make_twin(chain_of(([1.0, 20e3, 6.3e8], [1.0, 8e3, 4e7])), 48_000.0)  # 24 dB at low frequencies
+    for overflow, rounding in (("wrap", "truncate"), ("saturate", "nearest")):
+        arithmetic = Arithmetic(16, 15, overflow, rounding, error_feedback)
+        rounded = rounded_case("q24", form, boost)
+        name = f"{structure}_{overflow}"
+        header = header_of(name, rounded, error_feedback=error_feedback, sample=(16, 15))
+        write_case(tmp_path, header, overflow, rounding)
+        source = tmp_path / f"{name}.c"
+        source.write_text(program([(name, "int32_t")]))
+        result = build("gcc", source, *SANITIZE["gcc"])
+        assert result.returncode == 0, result.stderr
+        samples = noise_words(SAMPLES, 32767, seed=4)
+        samples[2_000:4_000] = 32767
+        done = subprocess.run([str(program_of(source))], input=samples.tobytes(), capture_output=True, check=False)
+        assert done.returncode == 0, done.stderr.decode()[:2000]
+        run = simulate_fixed(rounded, arithmetic, samples.tolist())
+        assert run.overflows[0] > 1_000
+        np.testing.assert_array_equal(np.frombuffer(done.stdout, dtype=np.int32), run.output)

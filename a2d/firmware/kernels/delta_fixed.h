@@ -17,8 +17,10 @@ static inline int @name@_finer(int8_t fraction)
 /* A section that saturates must not wind its states up. */
 static inline int64_t @name@_clamped(int64_t v)
 {
-    v = v > @NAME@_STATE_LIMIT ? @NAME@_STATE_LIMIT : v;
-    return v < -@NAME@_STATE_LIMIT ? -@NAME@_STATE_LIMIT : v;
+    if ((uint64_t)(v + @NAME@_STATE_LIMIT) > 2u * (uint64_t)@NAME@_STATE_LIMIT) {
+        return v > 0 ? @NAME@_STATE_LIMIT : -@NAME@_STATE_LIMIT;
+    }
+    return v;
 }
 
 static inline void @name@_section(const @word@ *c, const int8_t *fractions, @name@_state *state, const int32_t *in,
