@@ -82,7 +82,8 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
         recordings = examples(conversion)
     except AudioError as error:
         recordings, notes = (), [*notes, f"No sound to play: {error}"]
-    return report_page(conversion, source.sha256, Extras(findings(delivery), recordings, notes))
+    found = findings(delivery, limits_stated=source.design.limits is not None)
+    return report_page(conversion, source.sha256, Extras(found, recordings, notes))
 
 
 def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:

@@ -17,17 +17,21 @@ class Finding:
         The heading.
     text
         What was examined and how, in a sentence or two.
-    columns, rows
+    caption, columns, rows
         The table; the first column names the row.
     passed
         True or False where there is a verdict, None where there is none.
+    lines
+        Further sentences, one a line.
     """
 
     title: str
     text: str
+    caption: str
     columns: Sequence[str]
     rows: Sequence[Sequence[str]]
     passed: bool | None = None
+    lines: Sequence[str] = ()
 
 
 @dataclass(frozen=True)

@@ -11,7 +11,7 @@ from matplotlib.ticker import FuncFormatter, LogLocator, MaxNLocator, NullLocato
 
 from a2d.compare.errors import Comparison, Worst
 from a2d.report.style import ANALOG, FAINT_INK, INK, MARKERS, Sheet, frequency_axis, twin_style
-from a2d.report.text import grouped, hertz_with_unit, rate_label, signed
+from a2d.report.text import error_text, grouped, rate_label
 from a2d.report.traces import Curves, Traces
 
 DEEPEST_DB = 120.0  # of a magnitude plot, below its highest point
@@ -112,13 +112,11 @@ def _errors(axes: Axes, traces: Traces, quantity: str, worst: Sequence[Worst], u
     axes.axhline(0.0, color=FAINT_INK, linewidth=0.8)
     for index, (twin, point) in enumerate(zip(traces.twins, worst, strict=True)):
         curve: Curves = twin.error
-        label = (
-            f"{rate_label(twin.sample_rate_hz)}: worst {signed(point.worst)} {unit} at {hertz_with_unit(point.at_hz)}"
-        )
+        label = f"{rate_label(twin.sample_rate_hz)}: worst {error_text(point.worst, unit, point.at_hz)}"
         axes.plot(
             np.append(curve.f_hz, np.nan),
             np.append(getattr(curve, quantity), np.nan),
-            label=label.replace(" °", "°"),
+            label=label,
             **twin_style(index),
         )
         axes.plot(

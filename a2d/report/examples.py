@@ -13,11 +13,15 @@ from a2d.listening.quantise import ENCODINGS, to_steps, triangular_dither
 from a2d.listening.render import signal_source
 from a2d.listening.signals import SignalSettings, pink
 from a2d.report.content import Recording
-from a2d.report.text import rate_label, signed
+from a2d.report.text import error_text, rate_label, signed
 
 LEVEL_DBFS, SECONDS, SEED = -30.0, 2.5, 1
 HIGHEST_PEAK = 0.5  # -6 dBFS: what boosts beyond it is turned down, all versions alike
-VERSIONS = {"input": "Pink noise, unprocessed", "analog": "through the analog model", "twin": "through the twin"}
+VERSIONS = {
+    "input": "Pink noise, unprocessed",
+    "analog": "Pink noise through the analog model",
+    "twin": "Pink noise through the twin",
+}
 
 
 def examples(conversion: Conversion) -> tuple[Recording, ...]:
@@ -36,7 +40,7 @@ def examples(conversion: Conversion) -> tuple[Recording, ...]:
     gain = min(1.0, HIGHEST_PEAK / peak)
     level = LEVEL_DBFS + 20.0 * float(np.log10(gain))
     worst = judged.comparison.magnitude_db
-    listen = f"The twin departs most at {worst.at_hz:.4g} Hz, by {signed(worst.worst)} dB."
+    listen = f"The twin departs most by {error_text(worst.worst, 'dB', worst.at_hz)}."
     return tuple(
         Recording(
             f"{title}, {rate_label(rate)}",

@@ -13,7 +13,7 @@ from a2d.report.graphics import settle
 from a2d.report.inline import inline_svg
 from a2d.report.plots import PLOTS
 from a2d.report.style import PAGE_SHEET, PHONE_SHEET, drawing
-from a2d.report.text import hertz_with_unit, rate_label, signed
+from a2d.report.text import error_text, hertz_with_unit, rate_label, signed
 from a2d.report.traces import LOWEST_DB, Traces, traces
 
 
@@ -103,7 +103,7 @@ DESCRIPTIONS: dict[str, Callable[[Traces, Sequence[Comparison]], str]] = {
 
 def _worst(curves: Traces, found: Sequence[Worst], unit: str) -> str:
     parts = [
-        f"at {rate_label(twin.sample_rate_hz)} {signed(worst.worst)} {unit} at {hertz_with_unit(worst.at_hz)}"
+        f"at {rate_label(twin.sample_rate_hz)} {error_text(worst.worst, unit, worst.at_hz)}"
         for twin, worst in zip(curves.twins, found, strict=True)
     ]
     return f"Worst error of the twin: {'; '.join(parts)}."

@@ -10,24 +10,32 @@ from a2d.report.text import error_text, rate_label
 from a2d.wordlength.noise import boundary_peaks, boundary_sums
 
 
-def findings(delivery: Delivery) -> tuple[Finding, ...]:
-    """All tables of a delivery."""
-    return rounding(delivery), headroom(delivery)
+def findings(delivery: Delivery, *, limits_stated: bool) -> tuple[Finding, ...]:
+    """All tables of a delivery; without limits in the design there is no verdict."""
+    return rounding(delivery, limits_stated=limits_stated), headroom(delivery)
 
 
-def rounding(delivery: Delivery) -> Finding:
+def rounding(delivery: Delivery, *, limits_stated: bool) -> Finding:
     """Errors of the rounded twins against the analog chain; broken limits make it fail."""
     rows = []
+    kept = "kept" if limits_stated else "none stated"
     for twin, comparison, breaches in zip(delivery.twins, delivery.comparisons, delivery.breaches, strict=True):
         errors = (
             error_text(comparison.magnitude_db.worst, "dB", comparison.magnitude_db.at_hz),
             error_text(comparison.phase_deg.worst, "°", comparison.phase_deg.at_hz),
             error_text(comparison.group_delay_us.worst, "µs", comparison.group_delay_us.at_hz),
         )
-        rows.append((rate_label(twin.sample_rate_hz), *errors, "; ".join(str(b) for b in breaches) or "none broken"))
-    text = " ".join(f"{line}." for line in delivery.lines)
+        rows.append((rate_label(twin.sample_rate_hz), *errors, "; ".join(str(b) for b in breaches) or kept))
     columns = ("Rate", "Magnitude", "Phase", "Group delay", "Limits")
-    return Finding("After rounding", text, columns, rows, not any(delivery.breaches))
+    return Finding(
+        "After rounding",
+        "These are the errors of the numbers that the header holds.",
+        "Twin of the rounded coefficients minus analog, worst case over the band",
+        columns,
+        rows,
+        not any(delivery.breaches) if limits_stated else None,
+        delivery.lines,
+    )
 
 
 def headroom(delivery: Delivery) -> Finding:
@@ -45,8 +53,8 @@ def headroom(delivery: Delivery) -> Finding:
         "A fixed-point cascade needs that much room above the input's level."
     )
     columns = ("Output of section", *(rate_label(twin.sample_rate_hz) for twin in twins))
-    return Finding("Headroom", text, columns, rows)
+    return Finding("Headroom", text, "Peak level re full scale", columns, rows)
 
 
 def _decibels(level: float) -> str:
-    return f"{level:+.2f} dB".replace("-", "−")
+    return f"{level:+.2f} dB".replace("-", "−") if abs(level) >= 0.005 else "0.00 dB"

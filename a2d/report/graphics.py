@@ -11,7 +11,7 @@ import numpy as np
 from matplotlib.figure import Figure
 from matplotlib.transforms import Bbox
 
-DOTS_PER_INCH = 150
+from a2d.report.style import DOTS_PER_INCH
 
 
 def settle(figure: Figure) -> None:
@@ -22,6 +22,7 @@ def settle(figure: Figure) -> None:
     """
     with _boxes_for_missing_letters():
         figure.draw_without_rendering()
+        figure.draw_without_rendering()  # the first round changes the panels' sizes, and so how many ticks they have
     figure.set_layout_engine("none")
     for axes in figure.axes:
         axes.set_position(Bbox.from_bounds(*np.round(axes.get_position(original=True).bounds, 4)))

@@ -16,7 +16,7 @@ from a2d.report.figures import page_figures
 from a2d.report.sources import CAUTIONS, METHOD_SOURCES, OTHER_SOURCES
 from a2d.report.style import THEME
 from a2d.report.template import render
-from a2d.report.text import plain, rate_label
+from a2d.report.text import listed, plain, rate_label
 from a2d.report.transfer import transfers
 
 
@@ -73,7 +73,7 @@ def verdict(conversion: Conversion) -> Verdict:
     rates = [rate_label(j.twin.sample_rate_hz) for j in conversion.judged if j.breaches]
     if not broken:
         return Verdict("good", "Within the stated limits at every sample rate.", ())
-    return Verdict("bad", f"Over the stated limits at {' and '.join(rates)}.", broken)
+    return Verdict("bad", f"Over the stated limits at {listed(rates)}.", broken)
 
 
 @dataclass(frozen=True)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
@@ -16,6 +17,8 @@ from a2d.report.root_plot import draw_roots
 from a2d.report.style import FILE_SHEET, Sheet, drawing
 from a2d.report.text import plain
 from a2d.report.traces import Traces, traces
+
+TITLE_WIDTH = 70  # letters
 
 
 @dataclass(frozen=True)
@@ -58,7 +61,10 @@ def plots(
     for key, plot in PLOTS.items():
         with drawing(FILE_SHEET.text, svg_text=False):
             figure = plot.draw(curves, comparisons, FILE_SHEET)
-            figure.suptitle(f"{plain(title)} · {plot.caption.lower()}", x=0.01, ha="left", weight="bold")
+            lines = textwrap.wrap(
+                f"{plain(title)} · {plot.caption.lower()}", TITLE_WIDTH, max_lines=3, placeholder=" …"
+            )
+            figure.suptitle("\n".join(lines), x=0.01, ha="left", weight="bold")
             settle(figure)
             for extension, write in FORMATS.items():
                 files[f"{name}.{key}.{extension}"] = write(figure)

@@ -18,6 +18,7 @@ from a2d.report.traces import Traces
 
 Q_RAYS = (0.5, 0.707, 1.0, 2.0, 5.0)
 RIM_HZ = (1e3, 2e3, 5e3, 10e3, 20e3, 40e3, 80e3)
+WIDEST = 1e6  # ratio of frequencies on the s plane
 S_PLANE = 1.6  # panels high
 FAR_OUT = 1.35  # |z| of a zero that the unit circle's panel leaves out, and counts in its title
 
@@ -61,11 +62,15 @@ class LogPlane:
 
     @classmethod
     def around(cls, s: ComplexArray) -> LogPlane:
-        """Room for all of `s`, a decade less than the lowest and a little more than the highest."""
+        """Room for all of `s`, a decade less than the lowest and a little more than the highest.
+
+        What lies `WIDEST` below the highest goes to the centre: a zero at 0 that rounding has moved would else take
+        most of the room.
+        """
         modulus = np.abs(s[s != 0.0]) / (2.0 * np.pi)
         low, high = (float(modulus.min()), float(modulus.max())) if modulus.size else (100.0, 1e4)
         right = bool(np.any(s.real > 1e-9 * np.abs(s)))
-        return cls(10.0 ** float(np.floor(np.log10(low) - 0.3)), 1.3 * high, right)
+        return cls(10.0 ** float(np.floor(np.log10(max(low, high / WIDEST)) - 0.3)), 1.3 * high, right)
 
     @property
     def radius(self) -> float:
@@ -95,19 +100,21 @@ def _s_plane(axes: Axes, traces: Traces, sheet: Sheet) -> None:
     axes.set_xlim(min(-1.2 * plane.radius, right - room), right)
     axes.set_ylim(low, high)
     _bare(axes)
-    _root_legend(axes, traces, sheet)
+    _root_legend(axes, traces, sheet, plane.right_half)
 
 
-def _root_legend(axes: Axes, traces: Traces, sheet: Sheet) -> None:
+def _root_legend(axes: Axes, traces: Traces, sheet: Sheet, right_half: bool) -> None:
+    """Beside the quarter plane; below a half plane, which leaves no room beside it."""
     axes.plot([], [], "x", color=INK, label="pole")
     axes.plot([], [], "o", color=INK, markerfacecolor="none", label="zero")
     axes.plot([], [], color=ANALOG, linewidth=5.0, label="analog")
     for index, twin in enumerate(traces.twins):
         axes.plot([], [], color=twin_color(index), label=f"twin at {rate_label(twin.sample_rate_hz)}")
-    if sheet.columns > 1:
+    if sheet.columns > 1 and not right_half:
         axes.legend(handlelength=1.6, loc="upper left", borderaxespad=0.0)
     else:
-        axes.legend(handlelength=1.6, loc="upper left", bbox_to_anchor=(0.0, -0.02), ncols=2)
+        columns = 5 if sheet.columns > 1 else 2
+        axes.legend(handlelength=1.6, loc="upper left", bbox_to_anchor=(0.0, -0.02), ncols=columns)
 
 
 def _rings_and_rays(axes: Axes, plane: LogPlane) -> None:

@@ -15,6 +15,7 @@ from matplotlib.ticker import FixedFormatter, FixedLocator, MaxNLocator, NullFor
 from a2d.arrays import FloatArray
 from a2d.report.text import hertz
 
+DOTS_PER_INCH = 150
 PAPER = "#ffffff"
 INK = "#1f2328"
 FAINT_INK = "#57606a"
@@ -74,6 +75,8 @@ def drawing(text_size: float, svg_text: bool) -> Iterator[None]:
             {
                 "font.family": ["DejaVu Sans"],
                 "font.size": text_size,
+                "figure.dpi": DOTS_PER_INCH,
+                "text.hinting": "none",  # hinted letters have other widths at other sizes, which upsets the layout
                 "text.parse_math": False,
                 "text.color": INK,
                 "axes.titlesize": text_size + 1.0,

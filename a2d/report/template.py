@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import re
+from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
@@ -9,7 +11,22 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined
 
 from a2d.report.text import error_text, hertz_with_unit, plain, rate_label, signed
 
-_FILTERS = {"error": error_text, "hertz": hertz_with_unit, "rate": rate_label, "signed": signed, "plain": plain}
+_BEFORE_UNIT = re.compile(r"(?<=[0-9]) (?=(?:[kM]?Hz|dB|µs|LU)\b)")
+
+
+def units(text: str) -> str:
+    """`text` with the spaces between number and unit made unbreakable."""
+    return _BEFORE_UNIT.sub("\u00a0", text)
+
+
+_FILTERS: dict[str, Callable[..., str]] = {
+    "error": error_text,
+    "hertz": hertz_with_unit,
+    "rate": rate_label,
+    "signed": signed,
+    "plain": plain,
+    "units": units,
+}
 
 
 def render(template: str, **values: Any) -> bytes:

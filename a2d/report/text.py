@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 
 def hertz(f_hz: float) -> str:
@@ -73,3 +74,12 @@ def grouped(value: float) -> str:
 def plain(text: str) -> str:
     """`text` on one line, with whatever cannot be printed shown as a replacement sign."""
     return "".join(c if c.isprintable() else "\ufffd" for c in " ".join(text.split()))
+
+
+def listed(items: Sequence[str]) -> str:
+    """`a`, `a and b`, `a, b and c`.
+
+    >>> listed(["44.1 kHz", "48 kHz", "96 kHz"])
+    '44.1 kHz, 48 kHz and 96 kHz'
+    """
+    return " and ".join([", ".join(items[:-1]), items[-1]] if len(items) > 1 else items)

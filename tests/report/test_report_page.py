@@ -51,7 +51,9 @@ def conversion(title: str = "Quay strip", section: str = "presence", limits: str
 
 
 EXTRAS = Extras(
-    findings=(Finding(f"Rounding {MARKUP}", f"Text {MARKUP}", ("Rate", f"At {MARKUP}"), (("48 kHz", MARKUP),), True),),
+    findings=(
+        Finding(f"Rounding {MARKUP}", f"Text {MARKUP}", MARKUP, ("Rate", f"At {MARKUP}"), (("48 kHz", MARKUP),), True),
+    ),
     recordings=(Recording(f"Noise {MARKUP}", f"Listen {MARKUP}", b"RIFF"),),
     notes=(f"note {MARKUP}",),
 )
