@@ -20,9 +20,11 @@ def settle(figure: Figure) -> None:
     The solver behind the layout gives the last digits differently from run to run; places are rounded to 1e-4 of the
     figure, so that the same figure gives the same bytes.
     """
-    with _boxes_for_missing_letters():
-        figure.draw_without_rendering()
-        figure.draw_without_rendering()  # the first round changes the panels' sizes, and so how many ticks they have
+    engine = figure.get_layout_engine()
+    if engine is not None:
+        with _boxes_for_missing_letters():
+            for _ in range(2):  # the first round changes the panels' sizes, and so how many ticks they have
+                engine.execute(figure)
     figure.set_layout_engine("none")
     for axes in figure.axes:
         axes.set_position(Bbox.from_bounds(*np.round(axes.get_position(original=True).bounds, 4)))

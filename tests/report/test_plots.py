@@ -15,7 +15,11 @@ import pytest
 
 from a2d.compare.errors import compare
 from a2d.digital.twin import make_twin
+from a2d.report.graphics import settle, svg
 from a2d.report.plots import PLOTS, plots
+from a2d.report.root_plot import draw_roots
+from a2d.report.style import PHONE_SHEET, drawing
+from a2d.report.traces import traces
 from tests.support.chains import chain_of, equaliser, highpass, peaking
 
 ROOT = Path(__file__).parents[2]
@@ -94,6 +98,19 @@ def _has_locale(name: str) -> bool:
     return name.lower().replace("-", "") in listed
 
 
+def test_layout_does_not_tremble() -> None:
+    """Left to itself the layout of this plot differs in its last digits every few runs, and so do the bytes."""
+    chain = equaliser()
+    twins = [make_twin(chain, 96_000.0, match_hz=np.minimum(chain.f0_hz, 40_000.0))]
+    curves, seen = traces(chain, twins, [(20.0, 20_000.0)]), set()
+    for _ in range(8):
+        with drawing(PHONE_SHEET.text, svg_text=True):
+            figure = draw_roots(curves, [], PHONE_SHEET)
+            settle(figure)
+            seen.add(svg(figure))
+    assert len(seen) == 1
+
+
 def test_settings_of_the_caller_are_left_alone() -> None:
     before = dict(matplotlib.rcParams)
     chain = chain_of(peaking(1_000.0, 1.0, 3.0))
@@ -103,7 +120,7 @@ def test_settings_of_the_caller_are_left_alone() -> None:
 
 
 def test_many_rates_and_sections_and_a_flat_chain() -> None:
-    rates = (8_000.0, 16_000.0, 32_000.0, 44_100.0, 48_000.0, 88_200.0, 96_000.0, 192_000.0)
+    rates = (8_000.0, 16_000.0, 32_000.0, 44_100.0, 48_000.0, 88_200.0, 192_000.0)
     chain = chain_of(highpass(30.0, 0.7), *(peaking(100.0 * k, 2.0, 1.0) for k in range(1, 31)))
     twins = [make_twin(chain, rate, match_hz=np.minimum(chain.f0_hz, 0.4 * rate)) for rate in rates]
     assert len(plots(chain, twins, [compare(chain, t) for t in twins], "many", "Many")) == 10
