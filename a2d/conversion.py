@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 from a2d.analog.build import build_chain
 from a2d.analog.chain import AnalogChain
+from a2d.compare.control_tables import ControlTable, ready_sections, sweep_controls, tabulate
 from a2d.compare.errors import Comparison, band_of, compare, compare_sections
 from a2d.compare.verdict import Breach, judge
 from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
@@ -38,16 +39,18 @@ class Judged:
 
 @dataclass(frozen=True, eq=False)
 class Conversion:
-    """A design, its analog chain and its judged twins in the order of the sample rates."""
+    """A design, its analog chain, its judged twins in the order of the sample rates, and its controls' tables."""
 
     design: Design
     chain: AnalogChain
     judged: tuple[Judged, ...]
+    controls: tuple[ControlTable, ...] = ()
 
     @property
     def within_limits(self) -> bool:
-        """Whether no twin breaks a limit."""
-        return not any(j.breaches for j in self.judged)
+        """Whether no twin breaks a limit, at the design's own setting or at another position of a control."""
+        twins = any(j.breaches for j in self.judged)
+        return not twins and not any(rate.breaches for table in self.controls for rate in table.rates)
 
 
 def convert(design: Design) -> Conversion:
@@ -59,7 +62,11 @@ def convert(design: Design) -> Conversion:
         A section cannot be built, or has no twin at one of the rates.
     """
     chain = build_chain(design)
-    return Conversion(design, chain, tuple(convert_at(design, chain, rate) for rate in design.design.sample_rates))
+    sweeps = sweep_controls(design)
+    if sweeps:
+        chain = build_chain(design, ready_sections(sweeps))
+    judged = tuple(convert_at(design, chain, rate) for rate in design.design.sample_rates)
+    return Conversion(design, chain, judged, tuple(tabulate(design, chain, sweep) for sweep in sweeps))
 
 
 def convert_at(design: Design, chain: AnalogChain, sample_rate_hz: float) -> Judged:

@@ -63,7 +63,7 @@ def cascade_of(bank: Bank) -> tuple[FloatArray, FloatArray]:
     NetworkError
         The sum is zero or rises without end, or the cascade does not agree with it from 0.1 Hz to 1 MHz to 1e-9.
     """
-    roots, _ = cancelled(_sum_roots(bank))
+    roots, _ = cancelled(sum_roots(bank))
     b, a = second_order_sections(roots)
     terms = np.abs(bank.terms(CHECK_HZ)).max(axis=0)
     error = np.abs(chain_response(b, a, CHECK_HZ) - bank.response(CHECK_HZ))
@@ -77,7 +77,7 @@ def cascade_of(bank: Bank) -> tuple[FloatArray, FloatArray]:
     return b, a
 
 
-def _sum_roots(bank: Bank) -> ZeroPole:
+def sum_roots(bank: Bank) -> ZeroPole:
     """The zeros from the pencil of the sum, the poles from the bands: they are the same and known."""
     pencil = _pencil(bank)
     found = zero_pole(pencil)

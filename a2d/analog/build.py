@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from typing import Any
 
 import numpy as np
@@ -18,8 +18,15 @@ from a2d.design.section import Section
 from a2d.errors import A2dError, DesignError, Fault
 
 
-def build_chain(design: Design) -> AnalogChain:
+def build_chain(design: Design, ready: Mapping[int, Sections] | None = None) -> AnalogChain:
     """The cascade of all sections of a design; several sections of one entry are called `name.1`, `name.2`.
+
+    Parameters
+    ----------
+    design
+        The design.
+    ready
+        Sections of entries that are known already, by the entry's index.
 
     Raises
     ------
@@ -32,7 +39,7 @@ def build_chain(design: Design) -> AnalogChain:
     faults: list[Fault] = []
     for index, section in enumerate(design.sections):
         try:
-            sections = build_section(section)
+            sections = ready[index] if ready and index in ready else build_section(section)
         except A2dError as error:
             faults.append(Fault(str(error), f'section "{section.name}"'))
             continue

@@ -7,6 +7,7 @@ import sys
 
 from a2d.commands import summary
 from a2d.commands.banks import bank_files
+from a2d.commands.control_summary import control_breaches, control_notes, controls_table
 from a2d.commands.delivery import delivery_of
 from a2d.commands.options import add_design, add_out
 from a2d.commands.terminal import console
@@ -98,7 +99,10 @@ def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, n
     if equivalents is not None:
         out.print(equivalents)
     out.print(summary.errors_table(conversion))
-    for note in summary.notes(conversion):
+    controls = controls_table(conversion.controls)
+    if controls is not None:
+        out.print(controls)
+    for note in [*summary.notes(conversion), *control_notes(conversion.controls)]:
         out.print(f"- {note}")
     out.print("Firmware", style="bold")
     for line in delivery.lines:
@@ -116,4 +120,7 @@ def report_breaches(conversion: Conversion, delivery: Delivery) -> int:
             within = False
             after = "" if judged.breaches else " after rounding"
             print(f"a2d convert: limit broken{after} at {judged.twin.sample_rate_hz:g} Hz: {breach}", file=sys.stderr)
+    for line in control_breaches(conversion.controls):
+        within = False
+        print(f"a2d convert: {line}", file=sys.stderr)
     return 0 if within else 1

@@ -8,7 +8,9 @@ import msgspec
 
 from a2d.design import hardware, kinds  # noqa: F401  (they register the sorts of section)
 from a2d.design.c_words import C_WORDS
+from a2d.design.control import Control
 from a2d.design.firmware import Firmware
+from a2d.design.moves import control_faults
 from a2d.design.quantities import Degree, Hertz, PositiveDecibel, SampleRate, Seconds
 from a2d.design.section import MethodName, Section
 from a2d.design.structs import DesignStruct
@@ -56,6 +58,7 @@ class Design(DesignStruct, frozen=True, kw_only=True):
     sections: tuple[Section, ...] = msgspec.field(name="section")
     limits: Limits | None = None
     firmware: Firmware = Firmware()
+    controls: tuple[Control, ...] = msgspec.field(name="control", default=())
 
     def __post_init__(self) -> None:
         if not self.sections:
@@ -64,3 +67,6 @@ class Design(DesignStruct, frozen=True, kw_only=True):
         twice = next((n for n in names if names.count(n) > 1), None)
         if twice is not None:
             raise ValueError(f'two sections are called "{twice}" (allowed each name once)')
+        faults = control_faults(self.sections, self.controls)
+        if faults:
+            raise ValueError("; ".join(faults))

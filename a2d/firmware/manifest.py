@@ -9,6 +9,7 @@ from typing import Any
 from a2d.compare.banks import JudgedBank, parallel_banks
 from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion, Judged
+from a2d.firmware.control_manifest import control_tables
 
 FORMAT = 1
 
@@ -32,7 +33,7 @@ def manifest(conversion: Conversion, sha256: str) -> str:
         Of the design file's bytes.
     """
     table, chain = conversion.design.design, conversion.chain
-    content = {
+    content: dict[str, Any] = {
         "format": FORMAT,
         "tool": tool_name(),
         "design": {"name": table.name, "title": table.title, "sha256": sha256},
@@ -47,6 +48,8 @@ def manifest(conversion: Conversion, sha256: str) -> str:
     banks = parallel_banks(conversion.design)
     if banks:
         content["banks"] = [_bank(bank) for bank in banks]
+    if conversion.controls:
+        content["controls"] = control_tables(conversion.controls)
     return json.dumps(content, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 
 
