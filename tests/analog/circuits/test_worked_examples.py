@@ -251,7 +251,29 @@ CLOSED = [
 ]
 
 
-@pytest.mark.parametrize(("circuit", "values", "where"), CLOSED, ids=[c for c, *_ in CLOSED])
+# The second set of each: every part by a factor of its own, unless the circuit has to be balanced.
+FACTORS = {"R1": 0.39, "R2": 1.8, "R3": 0.68, "R4": 2.7, "R5": 3.9, "R6": 1.2, "R7": 0.56, "RA": 1.5, "RB": 0.82}
+FACTORS |= {"C1": 3.3, "C2": 0.47, "C3": 1.5, "L1": 2.2}
+BALANCED = {
+    "allpass_first_order": {"R1": 2.2e4, "R2": 2.2e4, "R3": 91e3, "C1": 680e-12},
+    "twin_t": {"R1": 3.9e3, "R2": 3.9e3, "R3": 1.95e3, "C1": 56e-9, "C2": 56e-9, "C3": 112e-9},
+    "twin_t_bootstrapped": {
+        **{"R1": 3.9e3, "R2": 3.9e3, "R3": 1.95e3, "C1": 56e-9, "C2": 56e-9, "C3": 112e-9},
+        **{"RA": 4.7e3, "RB": 4.3e3},
+    },
+    "crossover_lowpass": {"L1": 2.2e-3, "C1": 47e-6, "R2": 3.4, "L2": 0.3e-3, "R3": 3.4, "C2": 0.3e-3 / 3.4**2},
+    "crossover_highpass": {"L1": 0.22e-3, "C1": 4.7e-6, "R2": 5.1, "L2": 0.05e-3, "R3": 5.1, "C2": 0.05e-3 / 5.1**2},
+}
+
+
+def second_set(circuit, values):
+    return BALANCED.get(circuit) or {name: value * FACTORS.get(name, 1.0) for name, value in values.items()}
+
+
+TWICE = [(c, v, w) for c, v, w in CLOSED] + [(c, second_set(c, v), w) for c, v, w in CLOSED]
+
+
+@pytest.mark.parametrize(("circuit", "values", "where"), TWICE, ids=[c for c, *_ in TWICE])
 def test_closed_form(circuit, values, where):
     """Simple roots, so the network's rounding is some 1e-13; a balanced twin-T's poles come with a cancelled pair."""
     book = CIRCUITS[circuit].textbook(parts(circuit, **values))
