@@ -16,6 +16,8 @@ from a2d.digital.rational.setting import Setting, frequencies
 from a2d.digital.shapes import shape_of
 
 STEPS, ROUNDS = 100, 20
+STEPS_OF_ONE = 300
+"""Lawson's steps where there is only one start."""
 ADDED_AT = (0.15, 0.5, 1.0, 2.0, 4.0, 10.0)
 """tan(w/2) where an added section starts, its zeros upon its poles; each is tried and the best is kept."""
 NEPER_DB = 20.0 / np.log(10.0)
@@ -131,7 +133,7 @@ def _best(task: Task, start: State, first_order: BoolArray, allpass: BoolArray, 
     groups = groups_of(allpass, start.b[0], start.a[0], task.weight_phase)
     omega = np.tan(np.pi * task.f_hz / task.rate)
     model = Cascade(omega, task.target, groups, task.weight, task.weight_phase)
-    state = lawson(model, start, STEPS)
+    state = lawson(model, start, STEPS if len(start.b) > 1 else STEPS_OF_ONE)
     bound = np.zeros(len(state.b))
     if not task.weight_phase:
         sections = len(first_order)

@@ -15,6 +15,9 @@ from a2d.errors import ConversionError
 MOST_ADDED = 3
 """How many sections more than the chain has are tried before the limit counts as out of reach."""
 
+WITHIN = 0.99
+"""The part of a limit that a fit may take on its own grid, so that a finer one finds it kept."""
+
 
 def fewest_sections(
     b: FloatArray,
@@ -45,7 +48,7 @@ def fewest_sections(
     best: ChainFit | None = None
     for count in range(1, len(order) + MOST_ADDED + 1):
         best = _with_count(task, start, allpass, order, count, best)
-        if best.worst <= limit_db:
+        if best.worst <= WITHIN * limit_db:
             return best
     raise ConversionError(
         f"no {len(order) + MOST_ADDED} sections keep the chain within {limit_db:.4g} dB at {sample_rate_hz:g} Hz "

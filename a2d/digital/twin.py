@@ -10,13 +10,16 @@ import numpy as np
 from a2d import checks
 from a2d.analog.chain import AnalogChain
 from a2d.arrays import ArrayLike, ComplexArray, FloatArray
+from a2d.digital.allowed import Allowed
+from a2d.digital.choose import AUTO
 from a2d.digital.methods import EXACT_AT_MATCH, METHODS
-from a2d.digital.refusal import SectionRefused
 from a2d.digital.response import chain_response
+from a2d.digital.scopes import SCOPES, Order
 from a2d.errors import ConversionError, ParameterError
 
 WIDEST_BAND_HZ = (20.0, 20_000.0)
 HIGHEST_BAND_FRACTION = 0.4535  # of the sample rate: 20 kHz at 44.1 kHz, the design's upper end at lower rates
+MOST_EXTRA = 8
 _MATCH_REMEDY = 'give the section a `match` inside the band, take a higher rate, or method = "minimax"'
 
 
@@ -34,6 +37,8 @@ class Twin:
         Hz.
     match_hz
         Shape [S], Hz: where each section's response is exact by its method.
+    why
+        One a section where a method was chosen or sections were fitted together, and the reason; else empty.
     """
 
     names: tuple[str, ...]
@@ -41,6 +46,7 @@ class Twin:
     sos: FloatArray
     sample_rate_hz: float
     match_hz: FloatArray
+    why: tuple[str, ...] = ()
 
     @classmethod
     def from_sos(cls, sos: ArrayLike, sample_rate_hz: float, names: Sequence[str] | None = None) -> Twin:
@@ -81,8 +87,12 @@ def make_twin(
     method: str | Sequence[str] = "bilinear",
     match_hz: ArrayLike | None = None,
     band_hz: tuple[float, float] | None = None,
+    scope: str = "section",
+    extra_sections: int = 0,
+    weight_phase: float = 0.0,
+    allowed: Allowed | None = None,
 ) -> Twin:
-    """The digital twin of an analog chain, section by section.
+    """The digital twin of an analog chain.
 
     Parameters
     ----------
@@ -91,16 +101,25 @@ def make_twin(
     sample_rate_hz
         Hz.
     method
-        A name in `a2d.METHODS`, or one a section.
+        A name in `a2d.METHODS` or `auto`, or one a section.
     match_hz
         Hz, one or one a section: where the response is exact. The sections' f0 when absent.
     band_hz
         Hz, the band that matters to methods that minimise an error; `default_band_hz` when absent.
+    scope
+        `section`: a twin section for each of the chain's. `chain`: the same sections, fitted together so that their
+        errors compensate (method minimax). `fewest`: as few sections as keep `allowed` (method minimax).
+    extra_sections
+        With scope `chain`: sections more than the chain has.
+    weight_phase
+        For minimax: 0 fits magnitude alone; 1 the modulus of ln(twin/analog), its angle the phase error in radians.
+    allowed
+        The limits that `auto` and scope `fewest` work to, and that weigh the fit of a chain.
 
     Raises
     ------
     ParameterError
-        A match frequency at or above half the sample rate; an unknown method.
+        A match frequency at or above half the sample rate; an unknown method or scope; a mixture that makes no sense.
     ConversionError
         A section has more zeros than poles or is unstable, or the method has no solution for it.
 
@@ -116,23 +135,23 @@ def make_twin(
     _refuse_unfit(chain)
     methods = (method,) * len(chain) if isinstance(method, str) else tuple(method)
     _check_methods(chain.names, methods, match, rate)
+    if scope not in SCOPES:
+        raise ParameterError(f"there is no scope {scope!r} (allowed: {', '.join(SCOPES)})")
+    checks.whole("extra_sections", extra_sections, 0, MOST_EXTRA)
+    checks.between("weight_phase", weight_phase, 0.0, 100.0)
     band = default_band_hz(rate) if band_hz is None else np.asarray(band_hz, dtype=np.float64)
-    sos = np.empty((len(chain), 6))
-    for name in dict.fromkeys(methods):
-        rows = np.flatnonzero([m == name for m in methods])
-        try:
-            sos[rows] = METHODS[name](chain.b[rows], chain.a[rows], np.asarray(rate), match[rows], band)
-        except SectionRefused as error:
-            refused = ", ".join(f'"{chain.names[rows[r]]}"' for r in error.rows)
-            raise ConversionError(f"{error.reason} (section {refused} at {rate:g} Hz)") from error
-    return Twin(chain.names, methods, sos, rate, match.copy())
+    order = Order(
+        chain.names, chain.b, chain.a, rate, match, band, methods, extra_sections, float(weight_phase), allowed
+    )
+    made = SCOPES[scope](order)
+    return Twin(made.names, made.methods, made.sos, rate, made.match_hz, made.why)
 
 
 def _check_methods(names: Sequence[str], methods: Sequence[str], match: FloatArray, rate: float) -> None:
     """Refuse unknown methods, and match frequencies that a method cannot be exact at."""
     for name, method, f in zip(names, methods, match, strict=True):
-        if method not in METHODS:
-            raise ParameterError(f"there is no method {method!r} (allowed: {', '.join(METHODS)})")
+        if method not in METHODS and method != AUTO:
+            raise ParameterError(f"there is no method {method!r} (allowed: {', '.join((*METHODS, AUTO))})")
         if method in EXACT_AT_MATCH:
             checks.below_half_rate(f'the match frequency of section "{name}"', f, rate, _MATCH_REMEDY)
 
