@@ -66,9 +66,9 @@ class Cascade:
             for c, sign in ((state.b, 1.0), (state.a, -1.0))
         ]
         every = np.concatenate(shares, axis=2)
-        count, grid = every.shape[0], every.shape[-1]
-        flat = every.reshape(count, -1, grid).transpose(0, 2, 1)
-        moved = flat @ self.groups.reshape(len(self.groups), -1).T
+        every = every.reshape(len(every), -1, every.shape[-1])
+        columns = [np.flatnonzero(group) for group in self.groups.reshape(len(self.groups), -1)]
+        moved = np.stack([every[:, c].sum(axis=1) for c in columns], axis=-1)
         parts = [moved.real] + ([self.weight_phase * moved.imag] if self.weight_phase else [])
         return np.stack(parts, axis=1) * self.weight[:, np.newaxis], None
 

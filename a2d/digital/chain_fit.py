@@ -17,7 +17,8 @@ from a2d.digital.shapes import shape_of
 
 STEPS, ROUNDS = 100, 20
 STEPS_OF_ONE = 300
-"""Lawson's steps where there is only one start."""
+"""Lawson's steps where there is one start and nothing to be added to it: a long fit leaves an added section in a
+narrow valley."""
 ADDED_AT = (0.15, 0.5, 1.0, 2.0, 4.0, 10.0)
 """tan(w/2) where an added section starts, its zeros upon its poles; each is tried and the best is kept."""
 NEPER_DB = 20.0 / np.log(10.0)
@@ -93,7 +94,7 @@ def fit_chain(
     start = minimax(b, a, np.asarray(sample_rate_hz), np.asarray(0.0), band_hz)
     task = task_of(b, a, float(sample_rate_hz), band_hz, weight_phase, weight)
     allpass = shape_of(b, a).allpass
-    best = fit_from(task, start, allpass, 0)
+    best = fit_from(task, start, allpass, 0, STEPS if extra_sections else STEPS_OF_ONE)
     for added in range(1, extra_sections + 1):
         best = add_section(task, best, allpass, added)
     return best
@@ -114,10 +115,10 @@ def task_of(
     return Task(f_hz, chain_response(b, a, f_hz), factors, rate, weight_phase)
 
 
-def fit_from(task: Task, sos: FloatArray, allpass: BoolArray, added: int) -> ChainFit:
-    """The best near `sos` [T, 6]."""
+def fit_from(task: Task, sos: FloatArray, allpass: BoolArray, added: int, steps: int = STEPS) -> ChainFit:
+    """The best near `sos` [T, 6], after so many of Lawson's steps."""
     b, a, first_order = in_v(sos)
-    return _best(task, State(b[np.newaxis], a[np.newaxis]), first_order, allpass, added)
+    return _best(task, State(b[np.newaxis], a[np.newaxis]), first_order, allpass, added, steps)
 
 
 def add_section(task: Task, fit: ChainFit, allpass: BoolArray, added: int) -> ChainFit:
@@ -125,15 +126,15 @@ def add_section(task: Task, fit: ChainFit, allpass: BoolArray, added: int) -> Ch
     b, a, first_order = in_v(fit.sos)
     flat = np.array([[0.5 / k, 1.0, 0.5 * k] for k in ADDED_AT])[:, np.newaxis]
     tries = State(*(np.concatenate([np.tile(c, (len(flat), 1, 1)), flat], axis=1) for c in (b, a)))
-    return _best(task, tries, np.append(first_order, False), np.append(allpass, [False] * added), added)
+    return _best(task, tries, np.append(first_order, False), np.append(allpass, [False] * added), added, STEPS)
 
 
-def _best(task: Task, start: State, first_order: BoolArray, allpass: BoolArray, added: int) -> ChainFit:
+def _best(task: Task, start: State, first_order: BoolArray, allpass: BoolArray, added: int, steps: int) -> ChainFit:
     """The best of M tries, after Lawson's steps and, where the magnitude alone counts, the exchange."""
     groups = groups_of(allpass, start.b[0], start.a[0], task.weight_phase)
     omega = np.tan(np.pi * task.f_hz / task.rate)
     model = Cascade(omega, task.target, groups, task.weight, task.weight_phase)
-    state = lawson(model, start, STEPS if len(start.b) > 1 else STEPS_OF_ONE)
+    state = lawson(model, start, steps)
     bound = np.zeros(len(state.b))
     if not task.weight_phase:
         sections = len(first_order)
