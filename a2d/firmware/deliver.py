@@ -16,6 +16,7 @@ from a2d.firmware.kernel import arithmetic_of, write_kernel
 from a2d.firmware.model import Header, ProvedError, Table
 from a2d.firmware.plan import Plan, make_plan
 from a2d.firmware.vectors import make_vectors, write_check, write_vectors
+from a2d.wordlength.arithmetic import Arithmetic
 from a2d.wordlength.choose import Proof, prove
 
 
@@ -75,10 +76,11 @@ def deliver(
     rounded = tuple(rounded_twin(twin, proof) for twin, proof in zip(plan.twins, proofs, strict=True))
     comparisons = tuple(compare(chain, twin, band) for twin, band in zip(rounded, bands_hz, strict=True))
     header = _header(design, sha256, plan, rounded, proofs, comparisons)
+    arithmetic = arithmetic_of(header, firmware.overflow, firmware.sample_rounding)
     warnings = (words.warning(twin, proof, plan) for twin, proof in zip(plan.twins, proofs, strict=True))
     return Delivery(
-        files=_files(firmware, header, proofs),
-        lines=words.lines(plan, proofs, firmware.sample_word.fraction_bits),
+        files=_files(firmware, header, proofs, arithmetic),
+        lines=words.lines(plan, proofs, arithmetic),
         warnings=tuple(warning for warning in warnings if warning is not None),
         header=header,
         twins=rounded,
@@ -87,9 +89,10 @@ def deliver(
     )
 
 
-def _files(firmware: Firmware, header: Header, proofs: tuple[Proof, ...]) -> dict[str, str]:
+def _files(
+    firmware: Firmware, header: Header, proofs: tuple[Proof, ...], arithmetic: Arithmetic | None
+) -> dict[str, str]:
     files = {f"{header.name}.h": write_header(header)}
-    arithmetic = arithmetic_of(header, firmware.overflow, firmware.sample_rounding)
     if firmware.kernel:
         files[f"{header.name}_kernel.h"] = write_kernel(header, arithmetic)
     if firmware.test_vectors:

@@ -125,6 +125,17 @@ def _guards(header: Header) -> Iterator[str]:
     yield ""
     yield f"/* The tables are meant for a {word} of {size} bytes; the build stops here where it has another size. */"
     yield f"typedef char {header.name}_{word}_has_{size}_bytes[sizeof({word}) == {size} ? 1 : -1];"
+    yield from _expected_number(header)
+
+
+def _expected_number(header: Header) -> Iterator[str]:
+    upper = header.name.upper()
+    yield ""
+    yield f"/* Code that needs a number format defines {upper}_NEEDS_FLOAT32, _FLOAT64 or _FIXED before this file. */"
+    others = [kind.upper() for kind in KINDS if kind != header.number.kind]
+    yield "#if " + " || ".join(f"defined({upper}_NEEDS_{kind})" for kind in others)
+    yield f'#error "{header.name}.h holds {header.number.kind} numbers"'
+    yield "#endif"
 
 
 def _tables(header: Header) -> Iterator[str]:

@@ -8,19 +8,25 @@ import numpy as np
 
 from a2d.digital.twin import Twin
 from a2d.firmware.plan import Plan
+from a2d.wordlength.arithmetic import Arithmetic
+from a2d.wordlength.behaviour import measured_noise, quiet_noise, zero_input
 from a2d.wordlength.choose import ACCEPTED_DB, Proof
 from a2d.wordlength.noise import boundary_peaks, boundary_sums, noise_dbfs, noise_gains
 from a2d.wordlength.structures import TITLES
 
+_DECAY = 25.0  # time constants: a full-scale word of 28 bits falls below its last bit in 20
+_SILENCE = (4_000, 60_000)  # samples, at least and at most
+_MEASURED = 8_000  # samples of noise: a power good to 0.1 dB where it is white
 FLAGGED_DB = 0.1  # rounding that moves the response by more is said to be too much
 
 
-def lines(plan: Plan, proofs: tuple[Proof, ...], sample_fraction: int) -> tuple[str, ...]:
+def lines(plan: Plan, proofs: tuple[Proof, ...], arithmetic: Arithmetic | None) -> tuple[str, ...]:
     """The terminal's lines on firmware."""
     found = [rounding_line(twin, proof) for twin, proof in zip(plan.twins, proofs, strict=True)]
-    if plan.arrangements:
+    if arithmetic is not None:
         found.append(_order_line(plan))
-        found.extend(_level_line(t, p, plan, sample_fraction) for t, p in zip(plan.twins, proofs, strict=True))
+        found.extend(_level_line(t, p, plan, arithmetic.fraction) for t, p in zip(plan.twins, proofs, strict=True))
+        found.append(_behaviour_line(plan.twins[0], proofs[0], arithmetic))
     found.extend(_advice_lines(plan))
     return tuple(found)
 
@@ -28,7 +34,7 @@ def lines(plan: Plan, proofs: tuple[Proof, ...], sample_fraction: int) -> tuple[
 def rounding_line(twin: Twin, proof: Proof) -> str:
     """What rounding did at one rate."""
     rounded = proof.rounded
-    loss = f", shift {rounded.shift} ({rounded.shift} bits lost)" if rounded.shift else ""
+    loss = f", shift {rounded.shift}: {rounded.shift} fraction bits lost," if rounded.shift else ""
     gain = f", output shift {rounded.output_shift}" if rounded.output_shift else ""
     alone = "" if proof.nearest_db == proof.error_db else f" ({proof.nearest_db:.2g} dB if each were rounded alone)"
     return (
@@ -59,6 +65,19 @@ def _level_line(twin: Twin, proof: Proof, plan: Plan, sample_fraction: int) -> s
         f"{twin.sample_rate_hz:g} Hz: peak after each section in dB, sine/any signal: {shown}; "
         f"headroom for any signal at full scale {max(0.0, float(np.max(total))):.1f} dB; "
         f"round-off noise {noise:.0f} dBFS"
+    )
+
+
+def _behaviour_line(twin: Twin, proof: Proof, arithmetic: Arithmetic) -> str:
+    """What a simulation found at the first rate: rest after a burst, bias and noise."""
+    silence = int(np.clip(_DECAY / proof.margin, *_SILENCE))
+    rest = zero_input(proof.rounded, arithmetic, silence)
+    noise = measured_noise(proof.rounded, arithmetic, quiet_noise(_MEASURED, arithmetic))
+    ringing = f"rings on at {rest.amplitude} steps of the last bit" if rest.amplitude else "comes to rest"
+    return (
+        f"{twin.sample_rate_hz:g} Hz, simulated: after a full-scale burst and {silence} samples of silence it "
+        f"{ringing} ({sum(rest.overflows)} samples limited in the burst); noise {noise.dbfs:.0f} dBFS, "
+        f"bias {noise.bias:+.2f} steps"
     )
 
 

@@ -74,3 +74,9 @@ def zero_input(rounded: Rounded, arithmetic: Arithmetic, silence: int = 20_000) 
     burst = [top if n // 16 % 2 == 0 else -top - 1 for n in range(BURST)]
     run = simulate_fixed(rounded, arithmetic, burst + [0] * silence)
     return ZeroInput(max(abs(v) for v in run.output[-(silence // 4) :]), run.overflows)
+
+
+def quiet_noise(count: int, arithmetic: Arithmetic, seed: int = 1) -> FloatArray:
+    """White noise 24 dB below full scale as sample words, shape [N]: loud enough to spread rounding errors evenly."""
+    generator = np.random.default_rng(seed)
+    return np.asarray(np.rint(generator.standard_normal(count) * 2.0 ** (arithmetic.fraction - 4)))

@@ -9,7 +9,7 @@ from a2d.digital.response import chain_response
 
 _AROUND_POLE = np.array([0.0, 0.1, 0.25, 0.5, 0.8, 1.2, 2.0, 3.5, 6.0])
 _EVEN_POINTS = 200
-_FLOOR = 1e-5  # of the largest response: 100 dB below it an error is not judged, as in a2d.compare
+FLOOR = 1e-3  # of the largest response: what lies 60 dB below it is masked, and a notch's bottom moves by many dB
 
 
 def angular_grid(sos: FloatArray, rate_hz: float, band_hz: tuple[float, float], even: int = _EVEN_POINTS) -> FloatArray:
@@ -35,6 +35,6 @@ def deviation_db(exact: FloatArray, rounded: FloatArray, rate_hz: float, band_hz
     f = angular_grid(np.concatenate([exact, rounded]), rate_hz, band_hz)
     with np.errstate(divide="ignore", invalid="ignore"):
         h, r = (np.abs(chain_response(sos, f, rate_hz)) for sos in (exact, rounded))
-        floor = _FLOOR * np.max(h)
+        floor = FLOOR * np.max(h)
         level = 20.0 * np.abs(np.log10(np.maximum(r, floor) / np.maximum(h, floor)))
     return float(np.max(np.nan_to_num(level, nan=np.inf)))

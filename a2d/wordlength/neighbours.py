@@ -1,7 +1,8 @@
-"""Rounding together: the five words of a section chosen among their neighbours for the smallest response error.
+"""Rounding together: the five words of a section chosen among their neighbours for the smallest level error.
 
 For every feedback pair within `REACH` steps of the nearest one, the best real numerator is the solution of a linear
-least-squares problem (the numerator is linear in its coefficients); its neighbours are then the candidates. The
+least-squares problem (the numerator is linear in its coefficients); its neighbours are then the candidates. A zero at
+d.c., at half the rate or on the unit circle is kept exactly: the numerator moves only in directions that keep it. The
 nearest rounding is always among the candidates, so the result is never worse than it.
 """
 
@@ -14,17 +15,26 @@ import numpy as np
 
 from a2d.arrays import BoolArray, ComplexArray, FloatArray
 from a2d.digital.response import section_response, unit_delay_complement
-from a2d.wordlength.deviation import angular_grid
+from a2d.wordlength.deviation import FLOOR, angular_grid
 from a2d.wordlength.rounding import Rounded, fits
 from a2d.wordlength.stability import is_stable
 
 REACH = 2
 _FEEDBACK_STEPS = np.array(list(itertools.product(range(-REACH, REACH + 1), repeat=2)), dtype=np.float64)
-_FORWARD_STEPS = np.array(list(itertools.product((-1.0, 0.0, 1.0), repeat=3)))
+_PROMISING = 6  # feedback pairs whose numerator's neighbours are tried
 _POINTS = 40  # even points of the grid, to which those around each pole and zero are added
-_FLOOR = 1e-3  # of the largest response
+_GOOD_ENOUGH = 2e-6  # nepers, 1.7e-5 dB: a section that is off by less is left alone
 _TIE = 1e-3
 _TINY = 1e-9  # a numerator's sum below this part of its largest value means a zero at d.c. (or half the rate)
+# by (zero at d.c., zeros on the circle, zero at half the rate): the directions in b0, b1, b2 that keep them
+_DIRECTIONS = {
+    (True, True, False): [[1, -2, 1]],
+    (False, True, True): [[1, 2, 1]],
+    (True, False, True): [[1, 0, -1]],
+    (True, False, False): [[1, -1, 0], [0, 1, -1]],
+    (False, False, True): [[1, 1, 0], [0, 1, 1]],
+    (False, True, False): [[1, 0, 1], [0, 1, 0]],
+}
 
 
 def round_together(rounded: Rounded, sos: FloatArray, rate_hz: float, band_hz: tuple[float, float]) -> Rounded:
@@ -39,31 +49,38 @@ def round_together(rounded: Rounded, sos: FloatArray, rate_hz: float, band_hz: t
     rate_hz, band_hz
         Hz: the band that the error is judged in.
     """
-    words = np.stack([_best_row(rounded, sos, row, rate_hz, band_hz) for row in range(len(sos))])
+    words = np.stack([_best_row(rounded, row, sos[row], rate_hz, band_hz) for row in range(len(sos))])
     return replace(rounded, words=words)
 
 
-def _best_row(rounded: Rounded, sos: FloatArray, row: int, rate_hz: float, band_hz: tuple[float, float]) -> FloatArray:
-    nearest, exact = rounded.words[row], sos[row]
-    scale = 2.0 ** float(rounded.moved[row])
+def _best_row(
+    rounded: Rounded, row: int, exact: FloatArray, rate_hz: float, band_hz: tuple[float, float]
+) -> FloatArray:
+    nearest = rounded.words[row]
     f = angular_grid(exact[np.newaxis], rate_hz, band_hz, _POINTS)
-    wanted = section_response(exact, f, rate_hz) * scale
+    wanted = section_response(exact, f, rate_hz) * 2.0 ** float(rounded.moved[row])
     basis = _basis(f, rate_hz, rounded.structure)
-    step = _step(rounded, row)
-    candidates = _candidates(rounded, row, wanted, basis, step)
-    candidates = candidates[_keeps_zeros(candidates, rounded, row, exact)]
-    candidates = np.concatenate([nearest[np.newaxis], candidates])
-    values = np.ldexp(candidates, -rounded.fractions[row].astype(np.int32))
-    error = _error(_response(values, basis), wanted)
-    error[~is_stable(values, rounded.structure)] = np.inf
+    if _errors(nearest[np.newaxis], rounded, row, wanted, basis)[0] < _GOOD_ENOUGH:
+        return np.asarray(nearest)
+    candidates = np.concatenate([nearest[np.newaxis], _candidates(rounded, row, exact, wanted, basis)])
+    error = _errors(candidates, rounded, row, wanted, basis)
     return np.asarray(candidates[int(np.argmin(error))])
 
 
-def _error(response: ComplexArray, wanted: ComplexArray) -> FloatArray:
-    """The largest level error over the grid in nepers, shape [N]; the vector error decides between equals."""
-    weight = _weight(wanted)
-    level = np.abs(np.log(np.maximum(np.abs(response), _FLOOR * weight) / np.maximum(np.abs(wanted), _FLOOR * weight)))
-    return np.asarray(np.max(level + _TIE * np.abs(response - wanted) / weight, axis=-1))
+def _errors(words: FloatArray, rounded: Rounded, row: int, wanted: ComplexArray, basis: ComplexArray) -> FloatArray:
+    """The largest level error over the grid in nepers, words [N, 5] -> [N]; infinite where unstable.
+
+    The vector error decides between equals.
+    """
+    values = np.ldexp(words, -rounded.fractions[row].astype(np.int32))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        response = (values[:, :3] @ basis) / (basis[0] + values[:, 3:] @ basis[1:])
+        floor = FLOOR * np.max(np.abs(wanted))
+        size = np.maximum(np.abs(wanted), floor)
+        level = np.abs(np.log(np.maximum(np.abs(response), floor) / size))
+        error = np.max(level + _TIE * np.abs(response - wanted) / size, axis=-1)
+    stable = is_stable(values, rounded.structure)
+    return np.where(stable, np.nan_to_num(error, nan=np.inf), np.inf)
 
 
 def _basis(f_hz: FloatArray, rate_hz: float, structure: str) -> ComplexArray:
@@ -81,34 +98,75 @@ def _step(rounded: Rounded, row: int) -> FloatArray:
     return np.where(words == 0.0, 0.0, np.abs(np.spacing(words.astype(np.float32))).astype(np.float64))
 
 
-def _response(values: FloatArray, basis: ComplexArray) -> ComplexArray:
-    denominator = basis[0] + values[:, 3:] @ basis[1:]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        return np.asarray((values[:, :3] @ basis) / denominator)
-
-
-def _candidates(rounded: Rounded, row: int, wanted: ComplexArray, basis: ComplexArray, step: FloatArray) -> FloatArray:
-    """Words [N, 5]: all feedback neighbours, each with the neighbours of its best numerator."""
-    nearest, unit = rounded.words[row], np.ldexp(1.0, -rounded.fractions[row].astype(np.int32))
-    feedback = np.unique(nearest[3:] + _FEEDBACK_STEPS * step[3:], axis=0)
+def _candidates(rounded: Rounded, row: int, exact: FloatArray, wanted: ComplexArray, basis: ComplexArray) -> FloatArray:
+    """Words [N, 5]: the most promising feedback pairs, each with the neighbours of its best numerator."""
+    step, unit = _step(rounded, row), np.ldexp(1.0, -rounded.fractions[row].astype(np.int32))
+    feedback = np.unique(rounded.words[row, 3:] + _FEEDBACK_STEPS * step[3:], axis=0)
     denominator = basis[0] + (feedback * unit[3:]) @ basis[1:]
-    free = np.flatnonzero(step[:3])
-    weight = _weight(wanted)
-    forward = np.tile(nearest[:3], (len(feedback), 1))
-    for index, below in enumerate(denominator):
-        # (Σ b_j·basis_j)/below = wanted, weighted by 1/|wanted|, real and imaginary parts stacked
-        matrix = (basis[free] * unit[free, np.newaxis] / (below * weight)).T
-        target = wanted / weight
-        real = np.concatenate([matrix.real, matrix.imag])
-        if np.all(np.isfinite(real)) and len(free):
-            size = np.maximum(np.max(np.abs(real), axis=0), 1e-300)
-            best = np.linalg.lstsq(real / size, np.concatenate([target.real, target.imag]), rcond=None)[0] / size
-            grid = np.where(step[free] > 0.0, step[free], 1.0)
-            forward[index, free] = np.rint(best / grid) * grid
-    around = forward[:, np.newaxis, :] + _FORWARD_STEPS * step[:3]
-    pairs = np.broadcast_to(feedback[:, np.newaxis, :], (*around.shape[:2], 2))
-    together = np.concatenate([around, pairs], axis=-1).reshape(-1, 5)
+    moves = _moves(rounded, row, exact, step[:3])
+    best = _best_numerators(moves * unit[:3], denominator, wanted, basis)
+    centres = np.concatenate([best @ moves, feedback], axis=-1)
+    promising = np.argsort(_errors(centres, rounded, row, wanted, basis), kind="stable")[:_PROMISING]
+    around = np.array(list(itertools.product((-1.0, 0.0, 1.0), repeat=len(moves))))
+    forward = (best[promising, np.newaxis] + around) @ moves
+    pairs = np.broadcast_to(feedback[promising, np.newaxis], (*forward.shape[:2], 2))
+    together = np.concatenate([forward, pairs], axis=-1).reshape(-1, 5)
     return np.asarray(together[_in_range(together, rounded)])
+
+
+def _moves(rounded: Rounded, row: int, exact: FloatArray, step: FloatArray) -> FloatArray:
+    """Steps of the numerator's words that keep its zeros where they are, shape [M, 3]."""
+    directions = _directions(rounded, row, exact)
+    if directions is None or np.any((np.abs(directions).sum(axis=0) > 0) & (step == 0.0)):
+        directions = np.eye(3)[step > 0.0]
+    widest = np.divide(step, np.abs(directions), out=np.zeros_like(directions), where=directions != 0.0)
+    return np.asarray(directions * np.max(widest, axis=-1, initial=0.0, keepdims=True))
+
+
+def _directions(rounded: Rounded, row: int, exact: FloatArray) -> FloatArray | None:
+    b0, b1, b2 = exact[:3]
+    size = _TINY * np.max(np.abs(exact[:3]))
+    at_dc, on_circle, at_half = (bool(abs(v) <= size) for v in (b0 + b1 + b2, b2 - b0, b0 - b1 + b2))
+    if rounded.structure == "delta":
+        return _difference_directions(rounded.words[row], on_circle, at_half)
+    if at_dc != at_half and b2 == 0.0:
+        return np.array([[1.0, -1.0 if at_dc else 1.0, 0.0]])
+    found = _DIRECTIONS.get((at_dc, on_circle, at_half))
+    return None if found is None else np.array(found, dtype=np.float64)
+
+
+def _difference_directions(words: FloatArray, on_circle: bool, at_half: bool) -> FloatArray | None:
+    """The same in the difference form, whose numerator is b0, 2·b0 + b1, b0 + b1 + b2.
+
+    A zero at d.c. is a last word of zero, zeros on the circle make the last two equal, and with a zero at half the
+    rate as well all three are one number times 1, 4, 4.
+    """
+    if not on_circle or words[1] == 0.0 or words[1] != words[2]:
+        return None
+    if at_half and words[1] in (words[0], 4.0 * words[0]):
+        return np.array([words / words[0]])
+    return np.array([[1.0, 0.0, 0.0], [0.0, 1.0, 1.0]])
+
+
+def _best_numerators(
+    columns: FloatArray, denominator: ComplexArray, wanted: ComplexArray, basis: ComplexArray
+) -> FloatArray:
+    """Whole numbers of moves nearest to the best real ones for each denominator [N, F]; shape [N, M].
+
+    Minimises Σ|(Σ m_j·columns_j)·basis/denominator - wanted|²/|wanted|² over real m.
+    """
+    weight = np.maximum(np.abs(wanted), FLOOR * np.max(np.abs(wanted)))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        matrix = (columns @ basis)[np.newaxis] / (denominator * weight)[:, np.newaxis]
+    target = wanted / weight
+    real = np.concatenate([matrix.real, matrix.imag], axis=-1)
+    goal = np.concatenate([target.real, target.imag])
+    best = np.zeros(real.shape[:2])
+    for index, rows in enumerate(real):
+        if np.all(np.isfinite(rows)):
+            size = np.maximum(np.max(np.abs(rows), axis=-1, keepdims=True), 1e-300)
+            best[index] = np.linalg.lstsq((rows / size).T, goal, rcond=None)[0] / size[:, 0]
+    return np.rint(best)
 
 
 def _in_range(words: FloatArray, rounded: Rounded) -> BoolArray:
@@ -117,29 +175,3 @@ def _in_range(words: FloatArray, rounded: Rounded) -> BoolArray:
     forward = fits(words[:, :3], rounded.number.bits, 0, symmetric=False)
     back = fits(words[:, 3:], rounded.number.bits, 0, symmetric=True)
     return np.asarray(np.all(forward, axis=-1) & np.all(back, axis=-1), dtype=np.bool_)
-
-
-def _keeps_zeros(words: FloatArray, rounded: Rounded, row: int, exact: FloatArray) -> BoolArray:
-    """Candidates whose numerator keeps a zero at d.c., at half the rate, or on the unit circle exactly where it was."""
-    values = np.ldexp(words, -rounded.fractions[row].astype(np.int32))
-    b0, b1, b2 = values[:, 0], values[:, 1], values[:, 2]
-    if rounded.structure == "delta":
-        at_dc, mirror, at_half = b2, b2 - b1, 4.0 * b0 - 2.0 * b1 + b2
-    else:
-        at_dc, mirror, at_half = b0 + b1 + b2, b2 - b0, b0 - b1 + b2
-    size = _TINY * np.max(np.abs(exact[:3]))
-    keep = np.ones(len(words), dtype=np.bool_)
-    for value, original in (
-        (at_dc, exact[0] + exact[1] + exact[2]),
-        (mirror, exact[2] - exact[0]),
-        (at_half, exact[0] - exact[1] + exact[2]),
-    ):
-        if abs(original) <= size:
-            keep &= value == 0.0
-    return keep
-
-
-def _weight(wanted: ComplexArray) -> FloatArray:
-    """|wanted|, and below a floor the floor: an error in a notch's bottom counts as little as it is heard."""
-    size = np.abs(wanted)
-    return np.asarray(np.maximum(size, _FLOOR * np.max(size)))

@@ -129,6 +129,14 @@ def test_a_wrong_rate_stops_the_build(compiler: str, tmp_path) -> None:
     assert "EQ_FS_HZ is none of the rates in this header: 48000, 44056" in refused.stderr
 
 
+def test_another_number_format_than_needed_stops_the_build(tmp_path) -> None:
+    (tmp_path / "eq.h").write_text(write_header(a_header()))
+    source = tmp_path / "number.c"
+    source.write_text('#include "eq.h"\nint main(void) { return EQ_RATES != 2; }\n')
+    assert build("gcc", source, "-DEQ_NEEDS_FLOAT32").returncode == 0
+    assert "eq.h holds float32 numbers" in build("gcc", source, "-DEQ_NEEDS_FIXED").stderr
+
+
 def test_one_rate_needs_no_choice(tmp_path) -> None:
     header = a_header(tables=a_header().tables[:1])
     (tmp_path / "eq.h").write_text(write_header(header))

@@ -142,19 +142,20 @@ def test_difference_form_carries_low_sections(f0: float, kind: str) -> None:
 @pytest.mark.parametrize("number", [Number("float32"), Number("fixed", 16, 14), Number("fixed", 24, 22)])
 @pytest.mark.parametrize("structure", ["direct_form_1", "delta"])
 def test_rounding_together_is_never_worse(number: Number, structure: str) -> None:
-    better = 0
+    better = audible = 0
     for f0, q, gain in ((300.0, 0.7, 6.0), (1000.0, 4.0, -9.0), (90.0, 2.0, 3.0), (5000.0, 1.0, 12.0)):
         twin = a_twin(peaking(f0, q, gain))
         alone = round_nearest(twin.sos, number, structure)
         together = round_together(alone, twin.sos, 48_000.0, AUDIO)
         before, after = (deviation_db(twin.sos, r.sos, 48_000.0, AUDIO) for r in (alone, together))
         better += after < before
+        audible += before > 1e-4
         # the search judges on fewer points than the check does: a tenth of the error may hide between them
         assert not after > 1.1 * before + 1e-7
         assert np.all(
             np.abs(together.words - alone.words)[:, 3:] <= 2 * np.maximum(1.0, np.abs(alone.words[:, 3:]) * 2**-22)
         )
-    assert better >= 2
+    assert better >= audible / 2
 
 
 def test_rounding_together_keeps_the_zero_at_dc() -> None:
