@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 import itertools
+import re
+from pathlib import Path
 
 import numpy as np
 import pytest
 
-from a2d.report.style import ANALOG, DASHES, PAPER, TWINS, frequency_ticks, twin_style
+from a2d.report import style
+from a2d.report.style import ANALOG, DASHES, PAPER, THEME, TWINS, TWINS_ON_DARK, frequency_ticks, twin_style
 from a2d.report.text import hertz, plain
 
 # Simulation of full protanopia, deuteranopia and tritanopia on linear RGB: G. M. Machado, M. M. Oliveira and
@@ -39,16 +42,32 @@ def lab(color: str, vision: str) -> np.ndarray:
     return np.array([116 * f[1] - 16, 500 * (f[0] - f[1]), 200 * (f[1] - f[2])])
 
 
+@pytest.mark.parametrize("colors", [TWINS, TWINS_ON_DARK], ids=["light", "dark"])
 @pytest.mark.parametrize("vision", VISION)
-def test_twins_differ_for_every_eye(vision: str) -> None:
+def test_twins_differ_for_every_eye(vision: str, colors: tuple[str, ...]) -> None:
     # CIE 1976: 2.3 is a just noticeable difference; ten times that tells thin lines apart.
-    apart = [np.linalg.norm(lab(a, vision) - lab(b, vision)) for a, b in itertools.combinations(TWINS, 2)]
+    apart = [np.linalg.norm(lab(a, vision) - lab(b, vision)) for a, b in itertools.combinations(colors, 2)]
     assert min(apart) > 23.0
 
 
-@pytest.mark.parametrize("color", TWINS)
-def test_lines_stand_out_from_paper(color: str) -> None:
-    assert contrast(color, PAPER) >= 3.0  # WCAG 2.2, 1.4.11: graphical objects
+@pytest.mark.parametrize("theme", [0, 1], ids=["light", "dark"])
+def test_lines_stand_out_from_paper(theme: int) -> None:
+    paper = THEME["paper"][theme]
+    assert THEME["paper"][0] == PAPER
+    for color in (TWINS, TWINS_ON_DARK)[theme]:
+        assert contrast(color, paper) >= 3.0  # WCAG 2.2, 1.4.11: graphical objects
+
+
+@pytest.mark.parametrize("theme", [0, 1], ids=["light", "dark"])
+def test_text_on_pages_is_legible(theme: int) -> None:
+    css = (Path(style.__file__).parent / "common.css").read_text()
+    blocks = re.findall(r":root \{(.*?)\}", css, re.DOTALL)
+    own = dict(re.findall(r"--([a-z-]+): (#[0-9a-f]{6})", blocks[theme])) | {k: v[theme] for k, v in THEME.items()}
+    pairs = [(text, ground) for text in ("ink", "faint", "accent") for ground in ("paper", "ground")]
+    pairs += [(state, f"{state}-ground") for state in ("good", "bad", "open")] + [("bad", "paper")]
+    pairs += [("paper", "accent"), ("ink", "open-ground")]
+    for text, ground in pairs:
+        assert contrast(own[text], own[ground]) >= 4.5, (text, ground)  # WCAG 2.2, 1.4.3: text, level AA
 
 
 def test_thirty_rates_have_thirty_looks() -> None:
