@@ -70,6 +70,13 @@ def test_a_compiler_that_contracts_still_passes(flags: list[str], tmp_path: Path
     run(source)
 
 
+@pytest.mark.parametrize(("number", "structure"), [("f32", "tdf2"), ("q32", "ef2")])
+def test_without_the_ramp(number: str, structure: str, tmp_path: Path) -> None:
+    source = write(tmp_path, case(number, structure)[1])
+    assert build("gcc", source, "-DCOVE_NO_RAMP").returncode == 0
+    run(source)
+
+
 def swapped(text: str, one: str, other: str) -> str:
     return text.replace(one, "\0").replace(other, one).replace("\0", other)
 

@@ -5,7 +5,7 @@
  *   @name@_reset    silence: clear what the sections remember of the signal
  *   @name@_ramp     move to another set's coefficients in equal steps, one a sample; 0 when it cannot
  *   @name@_process  filter a block of any length; in and out may be the same
- * A filter is ready after @name@_use and @name@_reset.
+ * A filter is ready after @name@_use and @name@_reset. @NAME@_NO_RAMP, defined before, leaves the ramp out.
  *
  * A sample is a word of @NAME@_SAMPLE_BITS bits in an int32_t, full scale at 2^@NAME@_SAMPLE_FRACTION; the bits above
  * are headroom. Sums are exact in 64 bits; a result is @rounded@ and @limited@.
@@ -32,10 +32,12 @@ typedef struct {
     @word@ values[@NAME@_SECTIONS][@NAME@_VALUES];
     int8_t fractions[@NAME@_SECTIONS][@NAME@_VALUES];
     int32_t output_shift;
+#if !defined(@NAME@_NO_RAMP)
     uint32_t ramp_left;
     int64_t moving[@NAME@_SECTIONS][@NAME@_VALUES];
     int64_t steps[@NAME@_SECTIONS][@NAME@_VALUES];
     const @name@_set *target;
+#endif
     @name@_state state[@NAME@_SECTIONS];
 } @name@_filter;
 
@@ -55,8 +57,10 @@ static inline void @name@_use(@name@_filter *filter, const @name@_set *set)
         }
     }
     filter->output_shift = set->output_shift;
+#if !defined(@NAME@_NO_RAMP)
     filter->target = set;
     filter->ramp_left = 0;
+#endif
 }
 
 static inline void @name@_reset(@name@_filter *filter)
@@ -67,6 +71,7 @@ static inline void @name@_reset(@name@_filter *filter)
     }
 }
 
+#if !defined(@NAME@_NO_RAMP)
 /* Sets whose output shifts differ have gain in different places: the result is then 0, and nothing has changed. */
 static inline int @name@_ramp(@name@_filter *filter, const @name@_set *set, uint32_t samples)
 {
@@ -107,6 +112,7 @@ static inline void @name@_glide(@name@_filter *filter, uint32_t s, const int32_t
         @name@_section(filter->values[s], filter->fractions[s], &filter->state[s], in + i, out + i, 1);
     }
 }
+#endif /* @NAME@_NO_RAMP */
 
 static inline void @name@_shift_output(const @name@_filter *filter, int32_t *out, uint32_t count)
 {
@@ -120,6 +126,7 @@ static inline void @name@_shift_output(const @name@_filter *filter, int32_t *out
 static inline void @name@_process(@name@_filter *filter, const int32_t *in, int32_t *out, uint32_t count)
 {
     uint32_t s;
+#if !defined(@NAME@_NO_RAMP)
     if (filter->ramp_left > 0) {
         const uint32_t part = filter->ramp_left < count ? filter->ramp_left : count;
         for (s = 0; s < @NAME@_SECTIONS; ++s) {
@@ -134,6 +141,7 @@ static inline void @name@_process(@name@_filter *filter, const int32_t *in, int3
         out += part;
         count -= part;
     }
+#endif
     for (s = 0; s < @NAME@_SECTIONS; ++s) {
         @name@_section(filter->values[s], filter->fractions[s], &filter->state[s], s == 0 ? in : out, out, count);
     }
