@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -88,8 +88,9 @@ def parse_response(text: str, name: str = "response") -> MeasuredResponse:
         lines = lines[1:]
     else:
         columns = ["hz", "db", "deg"][: len(first)]
-    rows = [_row(name, i, line, len(columns)) for i, line in lines]
-    table = {column: np.array([row[k] for row in rows]) for k, column in enumerate(columns) if column}
+    used = {column: k for k, column in enumerate(columns) if column}
+    rows = [_row(name, i, line, len(columns), list(used.values())) for i, line in lines]
+    table = dict(zip(used, np.reshape(rows, (-1, len(used))).T, strict=True))
     return _checked(name, _measured(name, table))
 
 
@@ -106,15 +107,17 @@ def _number(word: str) -> float | None:
     return value if math.isfinite(value) else None
 
 
-def _row(name: str, line_number: int, line: str, count: int) -> list[float]:
+def _row(name: str, line_number: int, line: str, count: int, used: Sequence[int]) -> list[float]:
     words = _split(line)
     if len(words) != count:
         raise AudioError(f"{name} line {line_number} has {len(words)} columns ({count} expected): {line[:60]!r}")
-    values = [_number(word) for word in words]
-    for word, value in zip(words, values, strict=True):
+    values = []
+    for k in used:
+        value = _number(words[k])
         if value is None:
-            raise AudioError(f"{name} line {line_number}: {word!r} is not a finite number (write 0.5, not 0,5)")
-    return [value for value in values if value is not None]
+            raise AudioError(f"{name} line {line_number}: {words[k]!r} is not a finite number (write 0.5, not 0,5)")
+        values.append(value)
+    return values
 
 
 def _from_level(t: dict[str, FloatArray]) -> MeasuredResponse:

@@ -20,7 +20,7 @@ MARKER_SECONDS = 0.1
 MARKER_HZ = (6_000.0, 300.0)  # downwards, so that the rising sweep does not resemble it
 TAIL_SECONDS = 1.0  # after the sweep: room for latency and for the device to ring out
 LOW_HZ = 10.0
-HIGH_FRACTION = 0.47  # of the sample rate
+HIGH_FRACTION = 0.485  # of the sample rate: room for edges beyond 20 kHz at 44.1 kHz
 
 
 def faded(samples: FloatArray, sample_rate_hz: float, seconds: float) -> FloatArray:
