@@ -78,13 +78,12 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
     from a2d.report.findings import findings
     from a2d.report.page import report_page
 
-    notes = [*summary.notes(conversion), *delivery.warnings]
+    notes = [*summary.notes(conversion), *control_notes(conversion.controls), *delivery.warnings]
     try:
         recordings = examples(conversion)
     except AudioError as error:
         recordings, notes = (), [*notes, f"No sound to play: {error}"]
-    found = findings(delivery, limits_stated=source.design.limits is not None)
-    return report_page(conversion, source.sha256, Extras(found, recordings, notes))
+    return report_page(conversion, source.sha256, Extras(findings(conversion, delivery), recordings, notes))
 
 
 def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:

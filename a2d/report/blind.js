@@ -162,7 +162,8 @@
   document.addEventListener("keydown", (event) => {
     const typing = event.target.matches("input, select, textarea");
     if (event.repeat || event.ctrlKey || event.metaKey || event.altKey || typing || byId("run").hidden) return;
-    const action = KEYS[event.key.toLowerCase()];
+    const digit = /^(?:Digit|Numpad)([12])$/.exec(event.code); // some keyboards have digits on the shifted level
+    const action = KEYS[digit ? digit[1] : event.key.toLowerCase()];
     if (action) {
       event.preventDefault();
       action();

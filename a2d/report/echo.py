@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 import msgspec
 
+from a2d.analog.circuits import CIRCUITS
 from a2d.analog.kinds import KINDS
 from a2d.design.model import Design
 from a2d.design.quantities import Quantity
@@ -32,7 +33,7 @@ def echo(design: Design) -> tuple[Echo, ...]:
 
 
 def _section(section: Section) -> Echo:
-    kind = KINDS.get(str(getattr(section, "kind", "")))
+    kind = KINDS.get(getattr(section, "kind", "")) or CIRCUITS.get(getattr(section, "circuit", ""))
     pairs = [(key, value) for key, value in flat(section) if key != "name"]
     pairs.sort(key=lambda pair: pair[0] not in ("kind", "circuit"))  # what it is comes first, the rest as declared
     return Echo(section.name, kind.equation if kind else "", tuple(pairs))

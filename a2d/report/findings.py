@@ -1,18 +1,53 @@
-"""What the firmware's numbers do, as tables for the report: rounding, and the headroom inside the cascade."""
+"""Further results as tables for the report: rounding, headroom inside the cascade, panel controls."""
 
 from __future__ import annotations
 
 import numpy as np
 
+from a2d.compare.control_tables import ControlTable
+from a2d.compare.positions import MAGNITUDE
+from a2d.conversion import Conversion
 from a2d.firmware.deliver import Delivery
 from a2d.report.content import Finding
 from a2d.report.text import error_text, rate_label
 from a2d.wordlength.noise import boundary_peaks, boundary_sums
 
 
-def findings(delivery: Delivery, *, limits_stated: bool) -> tuple[Finding, ...]:
-    """All tables of a delivery; without limits in the design there is no verdict."""
-    return rounding(delivery, limits_stated=limits_stated), headroom(delivery)
+def findings(conversion: Conversion, delivery: Delivery) -> tuple[Finding, ...]:
+    """All tables of a conversion and its delivery; without limits in the design none has a verdict."""
+    stated = conversion.design.limits is not None
+    controls = tuple(control(table, limits_stated=stated) for table in conversion.controls)
+    return rounding(delivery, limits_stated=stated), headroom(delivery), *controls
+
+
+def control(table: ControlTable, *, limits_stated: bool) -> Finding:
+    """A group of controls: the worst position at each rate, what interpolation adds, broken limits."""
+    rows = []
+    for rate in table.rates:
+        k = rate.errors.worst_position()
+        worst, at_hz = float(rate.errors.worst[MAGNITUDE, k]), float(rate.errors.at_hz[MAGNITUDE, k])
+        broken = f"{int((~rate.within).sum())} of {rate.within.size} positions over" if rate.breaches else "kept"
+        rows.append(
+            (
+                rate_label(rate.sample_rate_hz),
+                error_text(worst, "dB", at_hz),
+                table.position(k),
+                f"{rate.between.worst_db:.2g} dB",
+                broken if limits_stated else "none stated",
+            )
+        )
+    size = " × ".join(str(n) for n in table.group.shape)
+    return Finding(
+        f"Control: {table.group.name}",
+        f"Every one of {size} positions was converted and compared; linear interpolation between them adds an error.",
+        "Twin minus analog, worst position",
+        ("Rate", "Magnitude", "With", "Interpolation adds", "Limits"),
+        rows,
+        not any(rate.breaches for rate in table.rates) if limits_stated else None,
+        tuple(
+            f"{rate_label(r.sample_rate_hz)} with {table.position(k)}: {b}" for r in table.rates for k, b in r.breaches
+        ),
+    )
 
 
 def rounding(delivery: Delivery, *, limits_stated: bool) -> Finding:

@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from a2d.compare.errors import Worst
-from a2d.compare.verdict import Breach
 from a2d.conversion import Conversion, Judged
 from a2d.design.model import Limits
 from a2d.firmware.manifest import tool_name
 from a2d.report.by_method import Attempt, attempts
-from a2d.report.content import Extras
+from a2d.report.content import Extras, Finding
 from a2d.report.echo import echo
 from a2d.report.figures import page_figures
 from a2d.report.sources import CAUTIONS, METHOD_SOURCES, OTHER_SOURCES
@@ -22,11 +22,11 @@ from a2d.report.transfer import transfers
 
 @dataclass(frozen=True)
 class Verdict:
-    """The first thing on the page: `good`, `bad` or `open` (no limits stated), one sentence, and the broken limits."""
+    """The first thing on the page: `good`, `bad` or `open` (no limits stated), one sentence, and what is broken."""
 
     state: str
     sentence: str
-    breaches: tuple[tuple[float, Breach], ...]
+    lines: tuple[str, ...] = ()
 
 
 def report_page(conversion: Conversion, sha256: str, extras: Extras | None = None) -> bytes:
@@ -41,14 +41,14 @@ def report_page(conversion: Conversion, sha256: str, extras: Extras | None = Non
     extras
         Rounding, headroom and spread results, rendered audio, notes; whatever there is.
     """
-    table = conversion.design.design
+    table, found = conversion.design.design, extras or Extras()
     return render(
         "page.html",
         title=plain(table.title or table.name),
         name=table.name,
         sha256=sha256,
         tool=tool_name(),
-        verdict=verdict(conversion),
+        verdict=verdict(conversion, found.findings),
         conversion=conversion,
         limits=conversion.design.limits,
         errors=[(judged, error_rows(judged, conversion.design.limits)) for judged in conversion.judged],
@@ -57,7 +57,7 @@ def report_page(conversion: Conversion, sha256: str, extras: Extras | None = Non
         figures=page_figures(conversion),
         attempts=_by_method(conversion),
         used=_methods_used(conversion),
-        extras=extras or Extras(),
+        extras=found,
         method_sources=METHOD_SOURCES,
         other_sources=OTHER_SOURCES,
         cautions=CAUTIONS,
@@ -65,15 +65,18 @@ def report_page(conversion: Conversion, sha256: str, extras: Extras | None = Non
     )
 
 
-def verdict(conversion: Conversion) -> Verdict:
-    """What to say first."""
-    if conversion.design.limits is None:
-        return Verdict("open", "No limits are stated in the design, so there is no verdict. The errors are below.", ())
-    broken = tuple((j.twin.sample_rate_hz, breach) for j in conversion.judged for breach in j.breaches)
+def verdict(conversion: Conversion, findings: Sequence[Finding] = ()) -> Verdict:
+    """What to say first: the twins' own limits, then whatever else was examined and failed."""
+    lines = [f"{rate_label(j.twin.sample_rate_hz)}: {breach}" for j in conversion.judged for breach in j.breaches]
+    failed = [finding.title for finding in findings if finding.passed is False]
+    lines += [f"{plain(title)}: not within the limits, see there" for title in failed]
+    if conversion.design.limits is None and not failed:
+        return Verdict("open", "No limits are stated in the design, so there is no verdict. The errors are below.")
+    if not lines:
+        return Verdict("good", "Within the stated limits at every sample rate.")
     rates = [rate_label(j.twin.sample_rate_hz) for j in conversion.judged if j.breaches]
-    if not broken:
-        return Verdict("good", "Within the stated limits at every sample rate.", ())
-    return Verdict("bad", f"Over the stated limits at {listed(rates)}.", broken)
+    sentence = f"Over the stated limits at {listed(rates)}." if rates else "A further check failed."
+    return Verdict("bad", sentence, tuple(lines))
 
 
 @dataclass(frozen=True)

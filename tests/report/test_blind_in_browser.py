@@ -54,10 +54,10 @@ def press(window: Browser, *keys: str) -> None:
         window.driver.switch_to.active_element.send_keys(key)
 
 
-def begin(window: Browser) -> None:
+def begin(window: Browser, trials: str = "16") -> None:
     """Start a run by keyboard alone: the begin button is reached and pressed."""
     window.driver.find_element(By.ID, "begin").send_keys(Keys.ENTER)
-    WebDriverWait(window.driver, 10).until(lambda _: text(window, "run-title") == "Trial 1 of 16")
+    WebDriverWait(window.driver, 10).until(lambda _: text(window, "run-title") == f"Trial 1 of {trials}")
 
 
 def test_full_run_by_keys_with_a_drawn_key(window: Browser, page: Path) -> None:
@@ -105,6 +105,36 @@ def test_no_answer_before_x_was_heard(window: Browser, page: Path) -> None:
     assert text(window, "run-title") == "Trial 1 of 16"
     press(window, "x", "2")
     assert text(window, "run-title") == "Trial 2 of 16"
+
+
+def test_another_run_has_another_key_and_length(window: Browser, page: Path) -> None:
+    window.open(page)
+    seals = set()
+    for trials in ("10", "5"):
+        choose = (
+            "const t = document.getElementById('trials'); t.value = arguments[0]; t.dispatchEvent(new Event('change'))"
+        )
+        window.run(choose, trials)
+        least = fewest_correct(int(trials))
+        assert text(window, "needed").startswith(f"With {trials} trials, {least} right answers")
+        begin(window, trials)
+        seals.add(text(window, "seal"))
+        for _ in range(int(trials)):
+            press(window, "x", "2")
+        key = text(window, "key")
+        assert len(key) == int(trials)
+        assert float(text(window, "p-value")) == pytest.approx(p_value(key.count("B"), int(trials)), abs=5e-5)
+        window.driver.find_element(By.ID, "again").send_keys(Keys.ENTER)
+    assert len(seals) == 2
+    assert window.complaints() == []
+
+
+def test_keys_do_nothing_while_a_number_is_typed(window: Browser, page: Path) -> None:
+    window.open(page)
+    begin(window)
+    press(window, "x")
+    window.driver.find_element(By.ID, "from").send_keys("0.1")
+    assert text(window, "run-title") == "Trial 1 of 16"
 
 
 def test_nothing_tells_the_key_during_the_run(window: Browser, page: Path) -> None:

@@ -13,7 +13,8 @@ from a2d.commands.delivery import delivery_of
 from a2d.conversion import convert
 from a2d.design.read import parse_design
 from a2d.report.examples import LEVEL_DBFS, SECONDS, examples
-from a2d.report.findings import headroom, rounding
+from a2d.report.findings import control, headroom, rounding
+from a2d.report.text import error_text
 from tests.report.test_report_page import DESIGN, LIMITS, conversion
 
 
@@ -64,3 +65,32 @@ def test_sound_is_what_the_twin_makes_of_the_input() -> None:
     step = 2.0**-15
     assert np.abs(signal.sosfilt(made.judged[0].twin.sos, given) - twin).max() < 1.5 * step * 5.0
     assert 0.01 < np.sqrt(np.mean((analog - twin) ** 2)) / np.sqrt(np.mean(twin**2)) < 0.5
+
+
+CONTROL = """
+[[control]]
+name = "lift"
+moves = ["presence.gain"]
+from = "-6 dB"
+to = "6 dB"
+positions = 5
+"""
+
+
+def test_controls_state_the_worst_position() -> None:
+    text = DESIGN.rpartition("[[section]]")[0].format(
+        title="Quay", section="presence", limits='[limits]\nmagnitude = "1 dB"'
+    )
+    made = convert(parse_design(text + CONTROL))
+    table = control(made.controls[0], limits_stated=True)
+    assert table.title == "Control: lift"
+    assert table.passed is False
+    assert [row[0] for row in table.rows] == ["48 kHz", "96 kHz"]
+    # The 16 kHz bell stands still: with the other bell flat the error is its own; the loop finds the worst of five.
+    worst = []
+    for gain in (-6.0, -3.0, 0.0, 3.0, 6.0):
+        at = convert(parse_design(text.replace("4.5 dB", f"{gain} dB")))
+        worst.append(at.judged[0].comparison.magnitude_db)
+    largest = max(worst, key=lambda w: abs(w.worst))
+    assert table.rows[0][1] == error_text(largest.worst, "dB", largest.at_hz)
+    assert table.rows[0][4] == "5 of 5 positions over"

@@ -156,7 +156,12 @@ def test_verdicts() -> None:
     assert verdict(conversion()).state == "open"
     assert verdict(conversion(limits='[limits]\nmagnitude = "20 dB"\n')).state == "good"
     bad = verdict(conversion(limits=LIMITS))
-    assert (bad.state, [rate for rate, _ in bad.breaches]) == ("bad", [48_000.0])
+    assert (bad.state, bad.sentence) == ("bad", "Over the stated limits at 48 kHz.")
+    assert all(line.startswith("48 kHz: magnitude error -") for line in bad.lines)
+    failed = Finding("Spread", "", "", (), (), passed=False)
+    assert verdict(conversion(limits='[limits]\nmagnitude = "20 dB"\n'), [failed]).lines == (
+        "Spread: not within the limits, see there",
+    )
 
 
 def test_echo_holds_every_value() -> None:
