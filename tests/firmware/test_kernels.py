@@ -117,7 +117,8 @@ def write_all_cases(folder: Path) -> list[tuple[str, str]]:
 def test_every_combination_equals_the_simulation(compiler: str, tmp_path: Path) -> None:
     source = tmp_path / "all.c"
     source.write_text(program(write_all_cases(tmp_path)))
-    result = build(compiler, source, *SANITIZE[compiler])
+    # 84 kernels in one program: the sanitizers' code takes gcc five times as long to optimise as to write out
+    result = build(compiler, source, *SANITIZE[compiler], *([] if compiler == "clang" else ["-O0"]))
     assert result.returncode == 0, result.stderr[:3000]
     data = b"".join(samples_of(n).tobytes() for n in ("f32", "f64", "q16"))
     done = subprocess.run([str(program_of(source))], input=data, capture_output=True, check=False)
