@@ -78,12 +78,13 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
     from a2d.report.findings import findings
     from a2d.report.page import report_page
 
-    notes = [*summary.notes(conversion), *control_notes(conversion.controls), *delivery.warnings]
+    notes = [*summary.notes(conversion), *control_notes(conversion.controls)]
     try:
         recordings = examples(conversion)
     except AudioError as error:
         recordings, notes = (), [*notes, f"No sound to play: {error}"]
-    return report_page(conversion, source.sha256, Extras(findings(conversion, delivery), recordings, notes))
+    extras = Extras(findings(conversion, delivery), recordings, notes, delivery.warnings)
+    return report_page(conversion, source.sha256, extras)
 
 
 def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:

@@ -63,8 +63,9 @@ class Recording:
 
 @dataclass(frozen=True)
 class Extras:
-    """Optional parts of a report page, in the order in which they appear."""
+    """Optional parts of a report page: warnings stand below the verdict, notes on sections after their H(s)."""
 
     findings: Sequence[Finding] = ()
     recordings: Sequence[Recording] = ()
     notes: Sequence[str] = ()
+    warnings: Sequence[str] = ()
