@@ -4,15 +4,19 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+import numpy as np
+
 from a2d.analog.build import build_chain
 from a2d.analog.chain import AnalogChain
+from a2d.compare.advice import Attempt, Remedy, remedies, twin_of, verdict
 from a2d.compare.control_tables import ControlTable, ready_sections, sweep_controls, tabulate
 from a2d.compare.errors import Comparison, band_of, compare, compare_sections
-from a2d.compare.verdict import Breach, judge
+from a2d.compare.verdict import Breach
 from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
 from a2d.design.model import Design
+from a2d.digital.certificate import Certificate, certify
 from a2d.digital.match import match_points
-from a2d.digital.twin import Twin, make_twin
+from a2d.digital.twin import Twin
 
 
 @dataclass(frozen=True, eq=False)
@@ -29,12 +33,18 @@ class Judged:
         Errors of each section alone; empty where twin and chain do not have one section each for each.
     breaches
         The limits that the whole chain breaks.
+    proofs
+        How near to the best each section is; empty where `sections` is.
+    advice
+        Where a limit is broken: what would keep it, or comes nearest, with its errors.
     """
 
     twin: Twin
     comparison: Comparison
     sections: tuple[Comparison, ...]
     breaches: tuple[Breach, ...]
+    proofs: tuple[Certificate, ...] = ()
+    advice: tuple[Remedy, ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -77,7 +87,13 @@ def convert_at(design: Design, chain: AnalogChain, sample_rate_hz: float) -> Jud
     methods = [entry.method or design.design.method for entry in entries]
     found = [isinstance(entry, (NetworkSection, CircuitSection, BankSection)) for entry in entries]
     match = match_points(chain.f0_hz, [entry.match for entry in entries], found, (low, high))
-    twin = make_twin(chain, sample_rate_hz, method=methods, match_hz=match, band_hz=(low, high))
+    table = design.design
+    attempt = Attempt(tuple(methods), match, table.scope, table.extra_sections, float(table.weight_phase))
+    twin = twin_of(chain, sample_rate_hz, design.limits, attempt)
     comparison = compare(chain, twin, (low, high))
-    sections = compare_sections(chain, twin, (low, high)) if len(twin) == len(chain) else ()
-    return Judged(twin, comparison, sections, judge(comparison, design.limits))
+    alone = len(twin) == len(chain) and table.scope == "section"
+    sections = compare_sections(chain, twin, (low, high)) if alone else ()
+    proofs = certify(twin.sos, chain.b, chain.a, sample_rate_hz, np.array([low, high])) if alone else ()
+    breaches = verdict(chain, twin, comparison, design.limits)
+    advice = remedies(chain, sample_rate_hz, design.limits, attempt) if breaches and design.limits else ()
+    return Judged(twin, comparison, sections, breaches, proofs, advice)

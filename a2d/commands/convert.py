@@ -120,6 +120,8 @@ def report_breaches(conversion: Conversion, delivery: Delivery) -> int:
             within = False
             after = "" if judged.breaches else " after rounding"
             print(f"a2d convert: limit broken{after} at {judged.twin.sample_rate_hz:g} Hz: {breach}", file=sys.stderr)
+        for remedy in judged.advice:
+            print(f"a2d convert: at {judged.twin.sample_rate_hz:g} Hz {remedy}", file=sys.stderr)
     for line in control_breaches(conversion.controls):
         within = False
         print(f"a2d convert: {line}", file=sys.stderr)

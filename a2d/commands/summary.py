@@ -118,7 +118,19 @@ def notes(conversion: Conversion) -> list[str]:
             f"{e.name}: shelf {'of first order' if e.order == 1 else 'as in the W3C note'}, half the gain in dB at f0"
             for e in shelves
         ]
+        + _reasons(conversion)
     )
+
+
+def _reasons(conversion: Conversion) -> list[str]:
+    """Why sections have the method that they have, where that was chosen and not stated; each reason once."""
+    found: dict[str, list[str]] = {}
+    for judged in conversion.judged:
+        twin = judged.twin
+        for name, method, why in zip(twin.names, twin.methods, twin.why, strict=False):
+            if why:
+                found.setdefault(f"at {hertz(twin.sample_rate_hz)}: {method}, {why}", []).append(name)
+    return [f"{', '.join(names)} {reason}" for reason, names in found.items()]
 
 
 def describe(entry: Section) -> str:

@@ -184,6 +184,13 @@ class QFactor(Quantity):
     low, high, above_low = 0.0, 1e4, True
 
 
+class Weight(Quantity):
+    """A factor of zero or above."""
+
+    prefixed = False
+    low, high = 0.0, 100.0
+
+
 class Fraction(Quantity):
     """A fraction of a whole, 0 to 1, or a percentage."""
 

@@ -5,8 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from a2d.analog.chain import AnalogChain
+from a2d.compare.advice import verdict
 from a2d.compare.errors import Comparison, compare
-from a2d.compare.verdict import Breach, judge
+from a2d.compare.verdict import Breach
 from a2d.design.firmware import Firmware
 from a2d.design.model import Design
 from a2d.digital.twin import Twin
@@ -85,7 +86,10 @@ def deliver(
         header=header,
         twins=rounded,
         comparisons=comparisons,
-        breaches=tuple(judge(comparison, design.limits) for comparison in comparisons),
+        breaches=tuple(
+            verdict(chain, twin, comparison, design.limits)
+            for twin, comparison in zip(rounded, comparisons, strict=True)
+        ),
     )
 
 

@@ -9,6 +9,7 @@ from typing import Any
 from a2d.compare.banks import JudgedBank, parallel_banks
 from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion, Judged
+from a2d.digital.certificate import Certificate
 from a2d.firmware.control_manifest import control_tables
 
 FORMAT = 1
@@ -59,12 +60,17 @@ def _twin(judged: Judged) -> dict[str, Any]:
         "sample_rate_hz": float(twin.sample_rate_hz),
         "sections": [
             {"name": name, "method": method, "match_hz": float(match), "sos": row.tolist()}
-            for name, method, match, row in zip(twin.names, twin.methods, twin.match_hz, twin.sos, strict=True)
+            | ({"why": twin.why[i]} if twin.why and twin.why[i] else {})
+            | (_certificate(judged.proofs[i]) if judged.proofs else {})
+            for i, (name, method, match, row) in enumerate(
+                zip(twin.names, twin.methods, twin.match_hz, twin.sos, strict=True)
+            )
         ],
         "comparison": _comparison(judged.comparison),
         "section_comparisons": [_comparison(section) for section in judged.sections],
         "within_limits": not judged.breaches,
         "broken_limits": [str(breach) for breach in judged.breaches],
+        "advice": [str(remedy) for remedy in judged.advice],
     }
 
 
@@ -88,6 +94,22 @@ def _bank(judged: JudgedBank) -> dict[str, Any]:
             }
             for twin, comparison in zip(judged.twins, judged.comparisons, strict=True)
         ],
+    }
+
+
+def _certificate(proof: Certificate) -> dict[str, Any]:
+    """How near to the best a section is; see docs/fidelity.md."""
+    return {
+        "certificate": {
+            "quantity": proof.quantity,
+            "unit": proof.unit,
+            "band_hz": list(proof.band_hz),
+            "worst": proof.worst,
+            "at_hz": proof.at_hz,
+            "alternations": proof.alternations,
+            "alternations_needed": proof.needed,
+            "lower_bound": proof.bound,
+        }
     }
 
 

@@ -1,0 +1,1 @@
+"""Tables of published standards that limits are taken from, one file a standard."""
