@@ -10,10 +10,8 @@ import numpy as np
 from a2d.analog.fit_solve import Model, Problem, evaluate, misfit
 from a2d.arrays import FloatArray
 
-FLOOR_DB, FLOOR_DEG = (
-    0.01,
-    0.1,
-)  # closer than any panel or part is known: what is left below that is not worth a section
+# Closer than any panel or part is known: what is left below that is not worth a section.
+FLOOR_DB, FLOOR_DEG = 0.01, 0.1
 NEPER_DB = 20.0 / math.log(10.0)
 WHITE = 3.5  # standard deviations, 1/sqrt(n), of the correlation between neighbours of white noise
 WIDEST_POINT = math.log(2.0) / 12.0  # what one point can speak for: it must not outweigh its error

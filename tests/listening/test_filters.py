@@ -43,7 +43,7 @@ def test_analog_in_blocks_is_the_whole_spectrum(rate: float) -> None:
     got = in_blocks(AnalogFilter(equaliser(), rate, 2), x)
     want = analog_whole(equaliser(), rate, x)
     assert got.shape == want.shape
-    assert np.max(np.abs(got - want)) < 1e-8 * np.max(np.abs(want))
+    assert np.max(np.abs(got - want)) < 1e-9 * np.max(np.abs(want))
 
 
 def test_analog_sine_has_the_level_and_phase_of_h() -> None:
