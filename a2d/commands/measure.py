@@ -24,7 +24,7 @@ from a2d.digital.twin import Twin
 from a2d.errors import AudioError, ConversionError, ParameterError
 from a2d.files import write_all
 from a2d.listening import suspects
-from a2d.listening.judge import Agreement, Verdict, agreement, judge
+from a2d.listening.judge import Agreement, Verdict, agreement, judge_measured
 from a2d.listening.measure import HARMONICS, Measured, measure_channel
 from a2d.listening.sweep import SweepPlan
 from a2d.listening.tables import channel_data, decibels, response_csv
@@ -135,7 +135,7 @@ def _channels(
                 others[suspects.SWAPPED] = np.asarray(1.0 / np.where(own == 0.0, 1e-12, own), dtype=np.complex128)
             if len(expected) > 1:
                 others[suspects.SWAPPED] = expected[1 - offset].references(f)[args.against]
-            verdict = judge(measured, own, others, tolerance)
+            verdict = judge_measured(measured, own, others, tolerance)
         found.append(Channel(args.channel + offset, measured, agreements, verdict))
     return found
 

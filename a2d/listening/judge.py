@@ -58,7 +58,7 @@ class Verdict:
     unusable: float
 
 
-def judge(
+def judge_measured(
     measured: Measured,
     reference: ComplexArray,
     suspects: Mapping[str, ComplexArray],

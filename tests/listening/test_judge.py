@@ -8,7 +8,7 @@ import pytest
 from a2d.digital.twin import make_twin
 from a2d.listening import suspects
 from a2d.listening.distortion import looks_clipped
-from a2d.listening.judge import Verdict, judge
+from a2d.listening.judge import Verdict, judge_measured
 from a2d.listening.measure import measure_channel
 from a2d.listening.sweep import SweepPlan
 from tests.support.chains import chain_of, highpass, peaking
@@ -29,7 +29,7 @@ def verdict(recorded: np.ndarray, loopback: np.ndarray | None = None) -> Verdict
     own = TWINS[RATE].response(f)
     others = suspects.wrong_rates(TWINS, RATE, f) | suspects.bypassed(f)
     others[suspects.SWAPPED] = make_twin(OTHER, RATE).response(f) if loopback is None else 1.0 / own
-    return judge(measured, own, others, 0.5)
+    return judge_measured(measured, own, others, 0.5)
 
 
 def test_the_right_filter() -> None:
