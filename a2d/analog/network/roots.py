@@ -16,16 +16,19 @@ import numpy as np
 
 from a2d.analog.network.degree import Degree, pole_degree, zero_degree
 from a2d.analog.network.pencil import Pencil, Reduced, reduce
-from a2d.arrays import ComplexArray, FloatArray
+from a2d.arrays import BoolArray, ComplexArray, FloatArray
 from a2d.errors import NetworkError
 
 _MIDDLE_RAD_S = 6000.0  # about 1 kHz
-# Steps between shifts, and the decades around the middle that they cover: no wider than needed, since far out the
-# rounding errors of roots at zero and at infinity look like roots; and with small steps, so that many roots at infinity
-# blur to outside of each step.
-_LADDERS = ((10.0, -4, 6), (10.0, -6, 9), (10.0, -9, 13), (10.0, -16, 13), (1.6, -4, 6), (1.6, -9, 13))
-_WIDE = 2  # the ladder that covers what any circuit has
+# Steps between shifts, and the decades around the middle that they cover: what most circuits need, what any does, and
+# small steps, so that many roots at infinity blur to outside of each.
+_LADDERS = ((10.0, -4, 6), (10.0, -16, 13), (1.6, -9, 13))
 _OFFSETS = (1.0, 1.37, 0.71, 1.93)  # a root on the border of two steps may be counted twice or not at all
+# Ranges in decades around the middle, narrow ones first: far out, the rounding errors of roots at zero and at infinity
+# look like roots.
+_RANGES = sorted(itertools.product((-5, -7, -10, -17), (7, 10, 14)), key=lambda ends: ends[1] - ends[0])
+_WIDEST = (-10, 14)
+_NONE = np.zeros(0, dtype=np.complex128)
 _SINGULAR = "the network's equations have no unique solution (look for parts that leave a voltage or current open)"
 
 
@@ -81,43 +84,48 @@ def poles_of(pencil: Pencil) -> ComplexArray:
 
 def _search(pencil: Pencil, degrees: Sequence[Degree]) -> tuple[list[ComplexArray], FloatArray, FloatArray]:
     """The poles, and the zeros where `degrees` has two, with the shifts that they were found from and H there."""
-    counts = tuple(degree.elsewhere for degree in degrees)
-    tries: list[tuple[int, ...]] = []
+    counts = [degree.elsewhere for degree in degrees]
+    wide: list[tuple[int, ...]] = []
     for (step, low, high), offset in itertools.product(_LADDERS, _OFFSETS):
         rungs = np.arange(round(low / np.log10(step)), round(high / np.log10(step)) + 1)
-        shifts, seen = _seen_from(pencil, offset * _MIDDLE_RAD_S * step**rungs)
-        matrices = zip((seen.poles, seen.zeros), counts, strict=False)
-        found = [_within(matrix, shifts, step, count) for matrix, count in matrices]
-        tries.append(tuple(map(len, found)))
-        if tries[-1] == counts or _rest_is_far(tries, counts):
-            return found, shifts, seen.h
-    seen_of = ", ".join(f"{k} of {n}" for k, n in zip(tries[-1], counts, strict=True))
+        shifts, seen = _seen_from(pencil, offset * _MIDDLE_RAD_S * step**rungs, zeros=len(counts) == 2)
+        matrices = (seen.poles, seen.zeros())[: len(counts)]
+        everything = [_within(m, shifts, step) if n else _NONE for m, n in zip(matrices, counts, strict=True)]
+        found = [_so_many(roots, count) for roots, count in zip(everything, counts, strict=True)]
+        if all(roots is not None for roots in found):
+            return [roots for roots in found if roots is not None], shifts, seen.h
+        if (step, low, high) == _LADDERS[1]:
+            wide.append(tuple(len(_ranged(roots, _WIDEST)) for roots in everything))
+    if len(set(wide)) == 1 and all(k <= n for k, n in zip(wide[0], counts, strict=True)):
+        # The rest is beyond 10¹⁶ Hz; the caller's check against the network finds out if it is not.
+        return [_ranged(roots, _WIDEST) for roots in everything], shifts, seen.h
+    seen_of = ", ".join(f"{k} of {n}" for k, n in zip(wide[-1], counts, strict=True))
     raise NetworkError(
         f"the roots cannot be told apart in double precision ({seen_of} found; look for values far out of range)"
     )
 
 
-def _rest_is_far(tries: list[tuple[int, ...]], counts: tuple[int, ...]) -> bool:
-    """Whether all tries of the wide ladder found the same roots and fewer than there are: the rest is beyond 10¹⁶ Hz.
-
-    The caller's check against the network finds out if it is not.
-    """
-    wide = set(tries[_WIDE * len(_OFFSETS) : (_WIDE + 1) * len(_OFFSETS)])
-    complete = len(tries) == len(_LADDERS) * len(_OFFSETS)
-    return complete and len(wide) == 1 and all(k <= n for k, n in zip(wide.pop(), counts, strict=True))
+def _so_many(roots: ComplexArray, count: int) -> ComplexArray | None:
+    """The roots of the narrowest range that holds as many as there are; None when there is none."""
+    return next((part for ends in _RANGES if len(part := _ranged(roots, ends)) == count), None)
 
 
-def _seen_from(pencil: Pencil, shifts: FloatArray) -> tuple[FloatArray, Reduced]:
-    """The pencil from each shift; shifts at which it is singular, or H is zero, are left out."""
+def _ranged(roots: ComplexArray, ends: tuple[int, int]) -> ComplexArray:
+    decades = np.log10(np.abs(roots) / _MIDDLE_RAD_S)
+    return roots[(decades >= ends[0]) & (decades < ends[1])]
+
+
+def _seen_from(pencil: Pencil, shifts: FloatArray, zeros: bool) -> tuple[FloatArray, Reduced]:
+    """The pencil from each shift; shifts at which it is singular, or H is zero if `zeros` matter, are left out."""
     try:
         seen = reduce(pencil, shifts)
     except np.linalg.LinAlgError:
         shifts = np.array([s for s in shifts if _solvable(pencil, s)])
         seen = reduce(pencil, shifts)
-    good = np.isfinite(seen.poles).all(axis=(-2, -1))
-    if np.any(seen.h):
-        good &= np.isfinite(seen.zeros).all(axis=(-2, -1))
-    return shifts[good], Reduced(seen.h[good], seen.poles[good], seen.zeros[good])
+    good: BoolArray = np.asarray(np.isfinite(seen.poles).all(axis=(-2, -1)))
+    if zeros:
+        good = np.asarray(good & np.isfinite(seen.zeros()).all(axis=(-2, -1)))
+    return shifts[good], seen[good]
 
 
 def _solvable(pencil: Pencil, shift: float) -> bool:
@@ -128,10 +136,8 @@ def _solvable(pencil: Pencil, shift: float) -> bool:
     return True
 
 
-def _within(matrices: FloatArray, shifts: FloatArray, step: float, expected: int) -> ComplexArray:
+def _within(matrices: FloatArray, shifts: FloatArray, step: float) -> ComplexArray:
     """The roots that lie within half a step of their own shift; conjugates made exact."""
-    if expected == 0:
-        return np.zeros(0, dtype=np.complex128)
     eigenvalues = np.linalg.eigvals(matrices).astype(np.complex128)
     with np.errstate(divide="ignore", invalid="ignore"):
         roots = shifts[:, np.newaxis] - 1.0 / eigenvalues

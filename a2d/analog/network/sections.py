@@ -12,6 +12,7 @@ from a2d.analog.response import section_response
 from a2d.arrays import ComplexArray, FloatArray
 
 _SAME = 1e-9  # relative distance below which a pole and a zero cancel: their rounding error with room to spare
+_REAL = 2e-8  # of |root|: an imaginary part below this is a double root's rounding error
 _APART = 100.0  # real poles further apart than this make two sections, each matched at its own frequency
 _GRID_HZ = np.geomspace(0.1, 1e6, 71)
 _AUDIO_HZ = np.geomspace(20.0, 20e3, 61)
@@ -20,8 +21,8 @@ _LEAST_RAD_S = 1e-3  # stands for a root at zero where distances are counted in 
 
 def cancelled(roots: ZeroPole) -> tuple[ZeroPole, ComplexArray]:
     """H(s) without the pairs of a pole and a zero at one place, and those poles (rad/s)."""
-    poles, zeros, gone = list(roots.poles), [], []
-    for zero in roots.zeros:
+    poles, zeros, gone = list(_parted(roots.poles)), [], []
+    for zero in _parted(roots.zeros):
         distance = np.abs(np.array(poles) - zero)
         nearest = int(np.argmin(distance)) if poles else 0
         if poles and distance[nearest] <= _SAME * abs(zero):
@@ -29,6 +30,15 @@ def cancelled(roots: ZeroPole) -> tuple[ZeroPole, ComplexArray]:
         else:
             zeros.append(zero)
     return replace(roots, poles=np.array(poles, dtype=complex), zeros=np.array(zeros, dtype=complex)), np.array(gone)
+
+
+def _parted(roots: ComplexArray) -> ComplexArray:
+    """The roots with every pair that is complex by rounding alone made a real double root, of the same product.
+
+    A double root comes out as a pair some 1e-8 apart; the sum of the pair changes by the square of that.
+    """
+    barely = (roots.imag != 0.0) & (np.abs(roots.imag) < _REAL * np.abs(roots))
+    return np.where(barely, np.sign(roots.real) * np.abs(roots), roots).astype(np.complex128)
 
 
 @dataclass

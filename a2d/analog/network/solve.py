@@ -74,9 +74,9 @@ def solve_pencil(pencil: Pencil) -> Solution:
     """H(s) of one pencil as second-order sections, checked against the pencil (see `solve_network`)."""
     roots, gone = cancelled(zero_pole(pencil))
     _check_proper(roots)
-    b, a = second_order_sections(roots)
-    _check_agreement(pencil, b, a)
-    return Solution(b, a, roots, _notes(gone))
+    solution = Solution(*second_order_sections(roots), roots, _notes(gone))
+    _check_agreement(solution, direct_response(pencil, CHECK_HZ))
+    return solution
 
 
 def _check_proper(roots: ZeroPole) -> None:
@@ -93,9 +93,8 @@ def _check_proper(roots: ZeroPole) -> None:
         )
 
 
-def _check_agreement(pencil: Pencil, b: FloatArray, a: FloatArray) -> None:
-    direct = direct_response(pencil, CHECK_HZ)
-    error = np.abs(chain_response(b, a, CHECK_HZ) - direct)
+def _check_agreement(solution: Solution, direct: ComplexArray) -> None:
+    error = np.abs(chain_response(solution.b, solution.a, CHECK_HZ) - direct)
     allowed = CHECK_RELATIVE * np.abs(direct) + CHECK_FLOOR * np.abs(direct).max()
     worst = int(np.argmax(error / allowed))
     if not np.all(error <= allowed):

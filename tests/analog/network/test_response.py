@@ -6,6 +6,7 @@ import pytest
 from a2d.analog.network.parts import lay_out
 from a2d.analog.network.pencil import direct_response
 from a2d.analog.network.response import network_response, nominal_values, value_names
+from a2d.design.network import ControlledCurrent, ControlledNodes
 from a2d.errors import NetworkError, ParameterError
 from tests.support.networks import bs468, c, coil, lowpass_ladder, network, one_pole, opamp, pot, r, sallen_key_cascade
 
@@ -81,11 +82,40 @@ def test_value_names():
     )
 
 
+def test_a_network_beyond_the_fast_way_is_solved_directly():
+    """Coils of 10 µH beside 1 mF and 10 MΩ: the roots span 14 decades."""
+    parts = {
+        "R1": r(1.0, "in", "a"),
+        "C1": c(1e-3, "a", "b"),
+        "R2": r(1e7, "b", "gnd"),
+        "L1": coil(1e-5, "b", "c", resistance=0.01),
+        "C2": c(1e-12, "c", "gnd"),
+        "R3": r(1e6, "c", "d"),
+        "C3": c(1e-3, "d", "gnd"),
+        "R4": r(1e-1, "d", "out"),
+        "C4": c(1e-11, "out", "gnd"),
+    }
+    net = network(parts)
+    sets = nominal_values(net) * np.random.default_rng(4).uniform(0.8, 1.2, (5, 10))
+    expected = one_by_one(net, sets)
+    scale = np.abs(expected).max(axis=-1, keepdims=True)
+    assert np.all(np.abs(network_response(net, sets, F) - expected) <= 1e-10 * scale)
+
+
 def test_refusals():
     net = bs468()
-    with pytest.raises(ParameterError, match=r"has \(8,\) values \(allowed 9: source, C1"):
+    with pytest.raises(ParameterError, match=r"a set has 8 values \(allowed 9: source, C1"):
         network_response(net, np.ones(8), F)
     with pytest.raises(ParameterError, match="not a finite number"):
         network_response(net, np.full(9, np.nan), F)
     with pytest.raises(NetworkError, match="one connection only"):
         network_response(network({**net.parts, "RX": r(1.0, "out", "x")}), np.ones(8), F)
+
+
+def test_a_set_without_a_solution_is_refused():
+    """A negative conductance of 1/1024 S beside a resistor of 1024 Ω leaves the output open."""
+    source = ControlledCurrent(transconductance=1e-4, nodes=ControlledNodes(plus="out", out="out"))
+    net = network({"R1": r(1024.0, "in", "out"), "G1": source})
+    assert network_response(net, [1024.0, 2.0**-11], F) == pytest.approx(np.full(41, 2.0))
+    with pytest.raises(NetworkError, match="without a unique solution"):
+        network_response(net, [1024.0, 2.0**-10], F)

@@ -239,6 +239,16 @@ def test_pairs_that_cancel_are_removed_and_mentioned():
     assert solution.notes == ("a pole and a zero cancel at 159.15 Hz",)
 
 
+def test_a_double_zero_of_which_one_meets_a_pole():
+    """Two equal branches to ground: rounding makes the double zero a complex pair, and half of it cancels."""
+    parts = {f"R{i}": r(50.0, "in", f"m{i}") for i in range(2)} | {f"C{i}": c(5e-10, f"m{i}", "gnd") for i in range(2)}
+    parts |= {"R2": r(25.0, "in", "gnd"), "C2": c(5e-10, "in", "gnd")}
+    for source, load in ((50.0, 99491.29089476538), (99491.29089476538, 50.0), (600.0, 600.0)):
+        roots = solve_network(network(parts, source=source, load=load, end="in")).roots
+        assert roots.zeros == pytest.approx([-4e7], rel=1e-7)
+        assert len(roots.poles) == 2
+
+
 def test_a_gain_that_rises_without_end_is_refused():
     parts = {"C1": c(1e-8, "in", "m"), "R1": r(1e4, "m", "out"), "U1": opamp("gnd", "m", "out")}
     with pytest.raises(NetworkError, match="rises without end"):
