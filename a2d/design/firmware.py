@@ -57,6 +57,9 @@ class Firmware(DesignStruct, frozen=True, kw_only=True):
     section_order
         `as_designed`, or `searched` for the best signal-to-noise ratio and headroom; searched for fixed point when
         absent.
+    pairing
+        `as_designed` leaves each section its own numerator; `nearest` deals the numerators anew, each pole pair taking
+        the nearest zeros.
     kernel, test_vectors
         Whether these files are wanted.
     """
@@ -71,6 +74,7 @@ class Firmware(DesignStruct, frozen=True, kw_only=True):
     overflow: Literal["saturate", "wrap"] = "saturate"
     sample_rounding: Literal["nearest", "truncate"] = "nearest"
     section_order: Literal["as_designed", "searched"] | None = None
+    pairing: Literal["as_designed", "nearest"] = "as_designed"
     kernel: bool = True
     test_vectors: bool = True
 

@@ -8,7 +8,8 @@ import numpy as np
 
 from a2d.design.firmware import Firmware, FixedNumber
 from a2d.digital.twin import Twin
-from a2d.wordlength.arrange import Arrangement, as_it_is, best_arrangement, scaled
+from a2d.wordlength.arrange import Arrangement, as_it_is, best_arrangement, nearest_zeros, scaled
+from a2d.wordlength.choose import refuse_unstable_twin
 from a2d.wordlength.formats import Number
 from a2d.wordlength.recommend import Candidate, candidates, recommended
 
@@ -26,9 +27,9 @@ class Plan:
     twins
         In order and scaling, one a sample rate; all with the same names.
     arrangements
-        Levels and noise of each; empty for floating point.
+        Levels and noise of each; empty for floating point in the design's order.
     designed
-        The same sections in the design's order, unscaled; empty for floating point.
+        The same sections in the design's order, unscaled.
     candidates, advice
         Every structure's figures at the highest rate, and the one to take.
     """
@@ -47,6 +48,11 @@ def make_plan(firmware: Firmware, twins: tuple[Twin, ...], bands_hz: tuple[tuple
     """Decide structure, order and scaling for the twins of a design (unrounded, one a sample rate)."""
     number = number_of(firmware)
     same = same_sections(twins)
+    for twin in same:
+        refuse_unstable_twin(twin)
+    if firmware.pairing == "nearest":
+        zeros_of = nearest_zeros(same[0].sos)
+        same = tuple(paired(twin, zeros_of) for twin in same)
     hardest = max(range(len(same)), key=lambda i: same[i].sample_rate_hz)
     choices = candidates(same[hardest], number, firmware.sample_word.fraction_bits, bands_hz[hardest])
     advice = recommended(choices)
@@ -55,7 +61,7 @@ def make_plan(firmware: Firmware, twins: tuple[Twin, ...], bands_hz: tuple[tuple
         structure, error_feedback = advice.structure, advice.error_feedback
     arrangements: tuple[Arrangement, ...] = ()
     designed: tuple[Arrangement, ...] = ()
-    if number.kind == "fixed":
+    if number.kind == "fixed" or firmware.searches_order:
         designed = tuple(as_it_is(t.sos, None, structure, error_feedback) for t in same)
         arrangements = designed
     if firmware.searches_order:
@@ -87,6 +93,17 @@ def _filled_up(twin: Twin, longest: Twin) -> Twin:
     methods = tuple("none" if i is None else twin.methods[i] for i in own)
     match = np.array([longest.match_hz[j] if i is None else twin.match_hz[i] for j, i in enumerate(own)])
     return Twin(longest.names, methods, sos, twin.sample_rate_hz, match)
+
+
+def paired(twin: Twin, zeros_of: tuple[int, ...]) -> Twin:
+    """The twin with the numerator of section `zeros_of[k]` in section k, which its name then says."""
+    sos = twin.sos.copy()
+    sos[:, :3] = twin.sos[list(zeros_of), :3]
+    names = tuple(
+        name if other == k else f"poles of {name}, zeros of {twin.names[other]}"
+        for k, (name, other) in enumerate(zip(twin.names, zeros_of, strict=True))
+    )
+    return replace(twin, names=names, sos=sos)
 
 
 def rearranged(twin: Twin, arrangement: Arrangement) -> Twin:

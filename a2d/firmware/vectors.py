@@ -13,6 +13,7 @@ from a2d.firmware.literals import float32_text, float64_text, integer_text
 from a2d.firmware.model import Header
 from a2d.wordlength.arithmetic import Arithmetic
 from a2d.wordlength.formats import Number
+from a2d.wordlength.noise import noise_gains
 from a2d.wordlength.rounding import Rounded
 from a2d.wordlength.simulate_fixed import simulate_fixed
 from a2d.wordlength.simulate_float import simulate_float
@@ -83,11 +84,24 @@ def stimulus() -> FloatArray:
 
 def _tolerance(rounded: Rounded, output: FloatArray, kind: str) -> float:
     """The format's tolerance at full scale, or more where rounding itself is larger: a low f0 in a direct form."""
-    finest = replace(rounded, number=Number("float64"))
-    rounding = float(np.max(np.abs(simulate_float(finest, stimulus()) - output))) if kind == "float32" else 0.0
     scale = max(1.0, float(np.max(np.abs(output))))
-    tolerance = max(_FULL_SCALE_TOLERANCE[kind] * scale, _ROUNDING_FACTOR * rounding)
+    tolerance = max(_FULL_SCALE_TOLERANCE[kind] * scale, _ROUNDING_FACTOR * _ROUNDING[kind](rounded, output))
     return float(np.float32(tolerance)) if kind == "float32" else tolerance
+
+
+def _float32_rounding(rounded: Rounded, output: FloatArray) -> float:
+    """What rounding makes in float32: the distance from the same numbers computed in double precision."""
+    finest = replace(rounded, number=Number("float64"))
+    return float(np.max(np.abs(simulate_float(finest, stimulus()) - output)))
+
+
+def _float64_rounding(rounded: Rounded, output: FloatArray) -> float:
+    """The same in float64 by the noise formula: four times the root of the power that ten roundings a sample make."""
+    step = 2.0**-52 * float(np.max(np.abs(output)))
+    return 4.0 * step * float(np.sqrt(10.0 * np.sum(noise_gains(rounded.sections)) / 12.0))
+
+
+_ROUNDING = {"float32": _float32_rounding, "float64": _float64_rounding}
 
 
 def write_vectors(header: Header, vectors: Vectors) -> str:

@@ -23,8 +23,9 @@ FLAGGED_DB = 0.1  # rounding that moves the response by more is said to be too m
 def lines(plan: Plan, proofs: tuple[Proof, ...], arithmetic: Arithmetic | None) -> tuple[str, ...]:
     """The terminal's lines on firmware."""
     found = [rounding_line(twin, proof) for twin, proof in zip(plan.twins, proofs, strict=True)]
-    if arithmetic is not None:
+    if plan.arrangements:
         found.append(_order_line(plan))
+    if arithmetic is not None:
         found.extend(_level_line(t, p, plan, arithmetic.fraction) for t, p in zip(plan.twins, proofs, strict=True))
         found.append(_behaviour_line(plan.twins[0], proofs[0], arithmetic))
     found.extend(_advice_lines(plan))

@@ -172,27 +172,23 @@ def _moved(order: tuple[int, ...], i: int, j: int) -> tuple[int, ...]:
     return rest[:j] + (order[i],) + rest[j:]
 
 
-def pair_nearest(sos: FloatArray) -> FloatArray:
-    """The same cascade with numerators dealt anew: the pole pair closest to the circle takes the nearest zeros.
+def nearest_zeros(sos: FloatArray) -> tuple[int, ...]:
+    """For each section's poles, the section whose zeros they should take: the poles closest to the circle choose first.
 
-    The usual rule (e.g. Oppenheim and Schafer, Discrete-Time Signal Processing, 3rd ed., section 6.9.3); the order of
-    the denominators stays. `sos` [S, 6].
+    The usual rule (e.g. Oppenheim and Schafer, Discrete-Time Signal Processing, 3rd ed., section 6.9.3). `sos` [S, 6].
     """
-    radius = 1.0 - _upper(sos[:, 3:])[1]
-    zeros, poles = _upper(sos[:, :3])[0], _upper(sos[:, 3:])[0]
-    free, paired = list(range(len(sos))), sos.copy()
-    for k in np.argsort(radius):
-        nearest = min(free, key=lambda j: abs(zeros[j] - poles[k]))
-        free.remove(nearest)
-        paired[k, :3] = sos[nearest, :3]
-    return paired
+    zeros, poles = _upper_root(sos[:, :3]), _upper_root(sos[:, 3:])
+    free, chosen = list(range(len(sos))), [0] * len(sos)
+    for k in np.argsort(-np.abs(poles), kind="stable").tolist():
+        chosen[k] = min(free, key=lambda j, k=k: (abs(zeros[j] - poles[k]), j != k))  # type: ignore[misc]
+        free.remove(chosen[k])
+    return tuple(chosen)
 
 
-def _upper(c: FloatArray) -> tuple[ComplexArray, FloatArray]:
-    """The root of c0·z² + c1·z + c2 in the upper half plane (or the larger real one), and its modulus; c [S, 3]."""
+def _upper_root(c: FloatArray) -> ComplexArray:
+    """The root of c0·z² + c1·z + c2 in the upper half plane (or the larger real one); c [S, 3] -> [S]."""
     found = []
     for row in c:
         roots = np.roots(np.trim_zeros(row, "f"))
         found.append(max(roots, key=lambda r: (r.imag, abs(r))) if len(roots) else 0.0)
-    upper = np.array(found, dtype=np.complex128)
-    return upper, np.abs(upper)
+    return np.array(found, dtype=np.complex128)

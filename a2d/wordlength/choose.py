@@ -69,11 +69,23 @@ def prove(twin: Twin, number: Number, structure: str, *, together: bool, band_hz
     RoundingError
         It is unstable after rounding, or does not fit; the message says what carries it.
     """
+    refuse_unstable_twin(twin)
     try:
         return prove_or_refuse(twin, number, structure, together=together, band_hz=band_hz)
     except RoundingError as error:
         advice = alternatives(twin, number, structure, band_hz)
         raise RoundingError(f"at {twin.sample_rate_hz:g} Hz {error}; {advice}") from None
+
+
+def refuse_unstable_twin(twin: Twin) -> None:
+    """Refuse a twin that no rounding could make stable."""
+    margins = margin_to_circle(twin.sos)
+    if np.any(margins <= 0.0):
+        bad = int(np.argmin(margins))
+        raise RoundingError(
+            f'section "{twin.names[bad]}" at {twin.sample_rate_hz:g} Hz is not stable even before rounding: a pole of '
+            f"modulus {1.0 - margins[bad]:.6g} (allowed below 1)"
+        )
 
 
 def prove_or_refuse(

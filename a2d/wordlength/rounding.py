@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
 from a2d.arrays import BoolArray, FloatArray, IntArray
 from a2d.errors import RoundingError
+from a2d.wordlength.arithmetic import DELTA_INTEGER_BITS
 from a2d.wordlength.formats import Number
 from a2d.wordlength.structures import sos_of, values_of
 
@@ -80,8 +82,7 @@ def round_nearest(sos: FloatArray, number: Number, structure: str, *, move_gain:
     if number.kind != "fixed":
         return _floating(values, number, structure)
     if structure == "delta":
-        fractions = own_fractions(values, number.bits)
-        return Rounded(number, structure, to_words(values, fractions), fractions, _none_moved(values))
+        return _own_fractions(values, number, structure)
     return _shared_fraction(values, number, structure, move_gain)
 
 
@@ -103,6 +104,21 @@ def own_fractions(values: FloatArray, bits: int) -> IntArray:
     return fractions
 
 
+def _own_fractions(values: FloatArray, number: Number, structure: str) -> Rounded:
+    """Each value with its own fraction bits; numerators of 2^5 and more would overflow the kernel's sums: they move."""
+    limit = 2.0**DELTA_INTEGER_BITS
+    moved = moved_gain(values[:, :3], number, lambda v: bool(np.all(np.abs(v) < limit)))
+    scaled = _with_gain_moved(values, moved)
+    fractions = own_fractions(scaled, number.bits)
+    return Rounded(number, structure, to_words(scaled, fractions), fractions, moved)
+
+
+def _with_gain_moved(values: FloatArray, moved: IntArray) -> FloatArray:
+    scaled = values.copy()
+    scaled[:, :3] = np.ldexp(scaled[:, :3], moved[:, np.newaxis].astype(np.int32))
+    return scaled
+
+
 def _floating(values: FloatArray, number: Number, structure: str) -> Rounded:
     with np.errstate(over="ignore"):
         words = values.astype(np.float32).astype(np.float64) if number.kind == "float32" else values.copy()
@@ -115,11 +131,13 @@ def _shared_fraction(values: FloatArray, number: Number, structure: str, move_ga
     shift = _smallest_shift(values[:, 3:], number, symmetric=True)
     moved = _none_moved(values)
     if move_gain:
-        moved = moved_gain(values[:, :3], number, number.fraction - shift)
+        fraction = number.fraction - shift
+        moved = moved_gain(
+            values[:, :3], number, lambda v: bool(np.all(fits(v, number.bits, fraction, symmetric=False)))
+        )
     else:
         shift = max(shift, _smallest_shift(values[:, :3], number, symmetric=False))
-    scaled = values.copy()
-    scaled[:, :3] = np.ldexp(scaled[:, :3], moved[:, np.newaxis].astype(np.int32))
+    scaled = _with_gain_moved(values, moved)
     fractions = np.full(values.shape, number.fraction - shift, dtype=np.int64)
     return Rounded(number, structure, to_words(scaled, fractions), fractions, moved, shift)
 
@@ -148,19 +166,19 @@ def fits(values: FloatArray, bits: int, fraction: int, *, symmetric: bool) -> Bo
     return np.asarray((words < limit) & (words > -limit if symmetric else words >= -limit))
 
 
-def moved_gain(forward: FloatArray, number: Number, fraction: int) -> IntArray:
-    """Powers of two for the numerators [S, 3] of a cascade so that all fit; shape [S], the sum not above zero.
+def moved_gain(forward: FloatArray, number: Number, fit: Callable[[FloatArray], bool]) -> IntArray:
+    """Powers of two for the numerators [S, 3] of a cascade so that all `fit`; shape [S], the sum not above zero.
 
     What one section gives up the next ones with room take back.
     """
     moved, owed = np.zeros(len(forward), dtype=np.int64), 0
     for row, values in enumerate(forward):
-        while not np.all(fits(np.ldexp(values, moved[row]), number.bits, fraction, symmetric=False)):
+        while not fit(np.ldexp(values, moved[row])):
             moved[row] -= 1
             owed += 1
             if owed > MOST_OUTPUT_SHIFT:
                 raise RoundingError(f"the gain does not fit {number} (more than 2^{MOST_OUTPUT_SHIFT} would be moved)")
-        while owed and np.all(fits(np.ldexp(values, moved[row] + 1), number.bits, fraction, symmetric=False)):
+        while owed and fit(np.ldexp(values, moved[row] + 1)):
             moved[row] += 1
             owed -= 1
     return moved

@@ -9,7 +9,7 @@ import pytest
 from scipy import signal
 
 from a2d.wordlength.arithmetic import Arithmetic
-from a2d.wordlength.arrange import ALL_ORDERS_UP_TO, as_it_is, best_arrangement, pair_nearest, scaled
+from a2d.wordlength.arrange import ALL_ORDERS_UP_TO, as_it_is, best_arrangement, nearest_zeros, scaled
 from a2d.wordlength.behaviour import measured_noise
 from a2d.wordlength.formats import Number
 from a2d.wordlength.rounding import round_nearest
@@ -47,7 +47,10 @@ def test_more_sections_than_are_compared_in_full() -> None:
 
 def test_pairing_puts_dealt_zeros_back() -> None:
     dealt = np.hstack([ELLIPTIC[[2, 0, 3, 1], :3], ELLIPTIC[:, 3:]])
-    paired, original = best_arrangement(pair_nearest(dealt)), best_arrangement(ELLIPTIC)
+    zeros_of = nearest_zeros(dealt)
+    assert zeros_of == (1, 3, 0, 2)
+    back = np.hstack([dealt[list(zeros_of), :3], dealt[:, 3:]])
+    paired, original = best_arrangement(back), best_arrangement(ELLIPTIC)
     assert paired.signal_to_noise_db == pytest.approx(original.signal_to_noise_db, abs=1e-6)
     assert best_arrangement(dealt).signal_to_noise_db < original.signal_to_noise_db - 0.5
 
