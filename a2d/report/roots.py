@@ -19,6 +19,10 @@ class Roots:
     is_pole: BoolArray
     section: IntArray
 
+    def where(self, chosen: BoolArray) -> Roots:
+        """Only the roots for which `chosen` [N] is true."""
+        return Roots(self.values[chosen], self.is_pole[chosen], self.section[chosen])
+
 
 def s_roots(chain: AnalogChain) -> Roots:
     """The finite poles and zeros of H(s), in rad/s."""
@@ -35,8 +39,8 @@ def z_roots(twin: Twin) -> Roots:
 
 def s_of_z(roots: Roots, sample_rate_hz: float) -> Roots:
     """Where roots in z lie in the s plane: fs·ln z, the place that rings and decays alike; z = 0 has none."""
-    there = roots.values != 0.0
-    return Roots(sample_rate_hz * np.log(roots.values[there]), roots.is_pole[there], roots.section[there])
+    there = roots.where(roots.values != 0.0)
+    return Roots(np.asarray(sample_rate_hz * np.log(there.values), dtype=np.complex128), there.is_pole, there.section)
 
 
 def _collect(numerators: list[FloatArray], denominators: list[FloatArray]) -> Roots:
