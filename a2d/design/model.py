@@ -12,9 +12,10 @@ from a2d.design import hardware, kinds  # noqa: F401  (they register the sorts o
 from a2d.design.c_words import C_WORDS
 from a2d.design.control import Control
 from a2d.design.firmware import Firmware
-from a2d.design.moves import control_faults
+from a2d.design.moves import control_faults, measured_faults
 from a2d.design.quantities import Decibel, Degree, Hertz, PositiveDecibel, SampleRate, Seconds, Weight
 from a2d.design.section import MethodName, Section
+from a2d.design.spread import Spread
 from a2d.design.structs import DesignStruct
 
 _IDENTIFIER = re.compile(r"[A-Za-z][A-Za-z0-9_]{0,62}")
@@ -109,6 +110,7 @@ class Design(DesignStruct, frozen=True, kw_only=True):
     limits: Limits | None = None
     firmware: Firmware = Firmware()
     controls: tuple[Control, ...] = msgspec.field(name="control", default=())
+    spread: Spread | None = None
 
     def __post_init__(self) -> None:
         if not self.sections:
@@ -118,6 +120,7 @@ class Design(DesignStruct, frozen=True, kw_only=True):
         if twice is not None:
             raise ValueError(f'two sections are called "{twice}" (allowed each name once)')
         faults = control_faults(self.sections, self.controls)
+        faults += measured_faults(self.sections, self.spread.measured if self.spread is not None else {})
         if faults:
             raise ValueError("; ".join(faults))
         self._check_fit()

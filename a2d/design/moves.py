@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import typing
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from types import UnionType
 from typing import Any, TypeAlias, TypeVar, get_args, get_origin
@@ -233,3 +233,29 @@ def _check_range(control: Control, index: int, move: Move, section: Section) -> 
         raise ValueError(f'"{move.path}" has the same value at both ends ({start:g} {move.unit})')
     if control.spacing == "logarithmic" and not (start > 0.0 and stop > 0.0):
         raise ValueError(f"logarithmic spacing needs values above zero ({start:g} and {stop:g} {move.unit})")
+
+
+def measured_faults(sections: Sequence[Section], measured: Mapping[str, Plain]) -> list[str]:
+    """What is wrong with measured values, each fault with its path."""
+    faults = []
+    for path, value in measured.items():
+        try:
+            with_values(sections, {path: value})
+        except ValueError as error:
+            faults.append(f"spread.measured: {error}")
+    return faults
+
+
+def with_values(sections: Sequence[Section], values: Mapping[str, Plain]) -> tuple[Section, ...]:
+    """The sections with the values at the paths of `values`, as a file writes them.
+
+    Raises
+    ------
+    ValueError
+        A path points at nothing, or a value does not fit there.
+    """
+    changed = list(sections)
+    for path, value in values.items():
+        move = resolve(sections, path)
+        changed[move.entry] = with_value(changed[move.entry], move, read_value(move, value))
+    return tuple(changed)

@@ -114,10 +114,8 @@ def advice(before: FloatArray, after: FloatArray, test: ClickTest, clicks: list[
     if own["hold"] < QUIET_DBFS:
         return f"take new coefficients at once: the click stays at {own['hold']:.0f} dBFS"
     needed = ramp_needed_ms(before, after, test, structure)
-    first = f"ramp the coefficients over {needed:g} ms"
-    if needed is None:
-        first = (
-            "ramp over 50 ms or more, or compute the moving sections in direct form I, whose memory keeps its meaning"
-        )
     never = f"never clear the state ({own['clear']:.0f} dBFS)"
+    first = "ramp over 50 ms or more, or compute the moving sections in direct form I, whose memory keeps its meaning"
+    if needed is not None:
+        first = f"ramp the coefficients over {needed:g} ms"
     return f"{first} ({best.replace('_', '-')} over {1000 * test.ramp_seconds:g} ms: {own[best]:.0f} dBFS); {never}"
