@@ -26,6 +26,7 @@ from a2d.digital.twin import Twin, make_twin
 from a2d.errors import A2dError
 
 _LATER = {
+    "CIRCUITS": "a2d.analog.circuits",
     "LoudnessMeter": "a2d.listening.loudness",
     "MeasuredResponse": "a2d.analog.measured",
     "SignalSettings": "a2d.listening.signals",
@@ -36,12 +37,16 @@ _LATER = {
     "fit_values": "a2d.analog.fit_values",
     "judge_measured": "a2d.listening.judge",
     "measure_channel": "a2d.listening.measure",
+    "network_response": "a2d.analog.network.response",
+    "nominal_values": "a2d.analog.network.response",
     "null_test": "a2d.listening.null_test",
     "p_value": "a2d.listening.trials",
     "parse_response": "a2d.analog.measured",
     "plots": "a2d.report.plots",
     "signal_source": "a2d.listening.render",
+    "solve_network": "a2d.analog.network.solve",
     "twin_whole": "a2d.listening.filters",
+    "value_names": "a2d.analog.network.response",
     "write_versions": "a2d.listening.render",
 }
 
@@ -53,6 +58,7 @@ def __getattr__(name: str) -> Any:
 
 
 __all__ = [
+    "CIRCUITS",
     "KINDS",
     "METHODS",
     "A2dError",
@@ -82,6 +88,8 @@ __all__ = [
     "judge_measured",
     "make_twin",
     "measure_channel",
+    "network_response",
+    "nominal_values",
     "null_test",
     "p_value",
     "parse_design",
@@ -89,6 +97,8 @@ __all__ = [
     "plots",
     "read_design",
     "signal_source",
+    "solve_network",
     "twin_whole",
+    "value_names",
     "write_versions",
 ]

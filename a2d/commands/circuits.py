@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator, Sequence
 
 from a2d.analog.hardware import network_of
 from a2d.analog.insight import Change, Figures, changes, figures
@@ -10,18 +11,27 @@ from a2d.analog.network.solve import solve_network
 from a2d.commands.terminal import hertz
 from a2d.conversion import Conversion, Judged
 from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
+from a2d.design.section import Section
 
 
 def circuit_notes(conversion: Conversion) -> list[str]:
     """f0, Q and gain of each section, what cancels, what op-amps and ends change, and match points that were moved."""
     lines = _figure_lines(conversion)
     band = conversion.judged[0].comparison.band_hz
-    for entry in conversion.design.sections:
-        if isinstance(entry, (NetworkSection, CircuitSection)):
-            network = network_of(entry)
-            lines += [f"{entry.name}: {note}" for note in solve_network(network).notes]
-            lines += [f"{entry.name}: {_change(change)}" for change in changes(network, band)]
+    for name, entry in _drawn(conversion.design.sections):
+        network = network_of(entry)
+        lines += [f"{name}: {note}" for note in solve_network(network).notes]
+        lines += [f"{name}: {_change(change)}" for change in changes(network, band)]
     return lines + _moved(conversion)
+
+
+def _drawn(sections: Sequence[Section], prefix: str = "") -> Iterator[tuple[str, NetworkSection | CircuitSection]]:
+    """The sections given by component values, those in banks included, by name."""
+    for section in sections:
+        if isinstance(section, (NetworkSection, CircuitSection)):
+            yield prefix + section.name, section
+        elif isinstance(section, BankSection):
+            yield from _drawn(section.band, f"{section.name}.")
 
 
 def _is_hardware(conversion: Conversion, index: int) -> bool:

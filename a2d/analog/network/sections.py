@@ -1,4 +1,8 @@
-"""Poles and zeros to real second-order sections, close ones together."""
+"""Poles and zeros found from a circuit to real second-order sections, close ones together.
+
+`a2d.analog.roots` does the same for roots that a design gives; here real poles may lie nine decades apart (an op-amp's
+beside a coupling capacitor's), so that not every two of them can share a section that is matched at one frequency.
+"""
 
 from __future__ import annotations
 
