@@ -16,6 +16,7 @@ from a2d.report.traces import Traces
 Q_RAYS = (0.5, 0.707, 1.0, 2.0, 5.0)
 WIDEST = 1e6  # ratio of frequencies on the plane
 BEYOND_RATE = 2.0  # times the highest sample rate; poles of op-amps and strays far above it are counted, not drawn
+VISIBLE = 1e-3  # Re s/|s| that can be told from the imaginary axis
 S_PLANE = 1.6  # panels high
 LABEL_GAP = 0.025  # of the radius
 
@@ -40,7 +41,7 @@ class LogPlane:
         low, high = (float(modulus.min()), float(modulus.max())) if modulus.size else (100.0, 1e4)
         inner = 10.0 ** float(np.floor(np.log10(max(low, high / WIDEST)) - 0.3))
         outside_centre = np.abs(shown) > 2.0 * np.pi * inner
-        right = bool(np.any(outside_centre & (shown.real > 1e-9 * np.abs(shown))))
+        right = bool(np.any(outside_centre & (shown.real > VISIBLE * np.abs(shown))))
         return cls(inner, 1.3 * high, right)
 
     @property
