@@ -19,11 +19,12 @@ from a2d.wordlength.simulate_fixed import simulate_fixed
 from a2d.wordlength.simulate_float import simulate_float
 
 LENGTH = 448
-_PAUSE = 64
-_NOISE = 320
-_LEVEL = 0.5  # of full scale, for impulse and noise
+_NOISE = slice(32, 224)
+_STEP = slice(224, 416)
+_LEVEL = 0.5  # of full scale, for impulse, noise and step
 _FULL_SCALE_TOLERANCE = {"float32": 1e-6, "float64": 1e-13}
-_ROUNDING_FACTOR = 4.0  # another order of additions, or a contracted a·b + c, rounds as much again, not ten times more
+# Another order of additions, or a contracted a·b + c, rounds elsewhere, and a constant signal lets its errors add up.
+_ROUNDING_FACTOR = 16.0
 _PER_LINE = 8
 
 
@@ -69,16 +70,18 @@ def make_vectors(tables: tuple[Rounded, ...], arithmetic: Arithmetic | None) -> 
 
 
 def stimulus() -> FloatArray:
-    """Impulse, pause, noise, silence; full scale is 1. Every value is a multiple of 2^-16.
+    """Impulse, pause, noise, step, silence; full scale is 1. Every value is a multiple of 2^-16.
 
+    The step shows a section whose f0 is so low that impulse and noise hardly move it.
     The noise is the upper half of the linear congruential generator x -> 1664525·x + 1013904223 mod 2^32 (Knuth, The
     Art of Computer Programming, vol. 2, section 3.3.4).
     """
     samples, state = np.zeros(LENGTH), 1
     samples[0] = _LEVEL
-    for n in range(_PAUSE, _PAUSE + _NOISE):
+    for n in range(_NOISE.start, _NOISE.stop):
         state = (1664525 * state + 1013904223) & 0xFFFFFFFF
         samples[n] = _LEVEL * ((state >> 16) - 32768) / 32768.0
+    samples[_STEP] = _LEVEL
     return samples
 
 
@@ -96,9 +99,9 @@ def _float32_rounding(rounded: Rounded, output: FloatArray) -> float:
 
 
 def _float64_rounding(rounded: Rounded, output: FloatArray) -> float:
-    """The same in float64 by the noise formula: four times the root of the power that ten roundings a sample make."""
+    """The same in float64 by the noise formula: the root of the power that ten roundings a sample make."""
     step = 2.0**-52 * float(np.max(np.abs(output)))
-    return 4.0 * step * float(np.sqrt(10.0 * np.sum(noise_gains(rounded.sections)) / 12.0))
+    return step * float(np.sqrt(10.0 * np.sum(noise_gains(rounded.sections)) / 12.0))
 
 
 _ROUNDING = {"float32": _float32_rounding, "float64": _float64_rounding}

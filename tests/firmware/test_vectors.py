@@ -8,12 +8,15 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from a2d.digital.twin import make_twin
 from a2d.firmware.header import write_header
 from a2d.firmware.kernel import arithmetic_of, write_kernel
 from a2d.firmware.model import Header
 from a2d.firmware.vectors import make_vectors, stimulus, write_check, write_vectors
+from a2d.wordlength.rounding import round_nearest
 from tests.support.c_build import COMPILERS, SANITIZE, build, program_of, run
-from tests.support.firmware_cases import STRUCTURE_CASES, header_of, rounded_case, table_of, twin
+from tests.support.chains import chain_of, peaking
+from tests.support.firmware_cases import NUMBERS, STRUCTURE_CASES, header_of, rounded_case, table_of, twin
 
 RATES = (48_000.0, 96_000.0)
 CASES = [
@@ -162,4 +165,14 @@ def test_the_stimulus_is_exact_in_16_bits() -> None:
     x = stimulus()
     np.testing.assert_array_equal(x * 65536, np.rint(x * 65536))
     assert np.max(np.abs(x)) == 0.5
-    assert np.all(x[-64:] == 0.0)
+    assert np.all(x[-32:] == 0.0)
+
+
+@pytest.mark.parametrize("structure", ["direct_form_1", "transposed_direct_form_2", "delta"])
+@pytest.mark.parametrize("f0", [20.0, 200.0, 2_000.0])
+def test_a_wrong_rate_stands_out_at_any_f0(structure: str, f0: float) -> None:
+    """The outputs at two rates differ by more than the tolerance, also where rounding makes that wide."""
+    twins = [make_twin(chain_of(peaking(f0, 1.0, 3.0)), rate) for rate in RATES]
+    tables = [round_nearest(twin.sos, NUMBERS["f32"], structure) for twin in twins]
+    vectors = make_vectors(tuple(tables), None)
+    assert np.max(np.abs(vectors.outputs[0] - vectors.outputs[1])) > 1.5 * np.max(vectors.tolerances)

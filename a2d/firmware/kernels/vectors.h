@@ -1,6 +1,6 @@
 /* @name@: test vectors, an input and the output that @name@.h and its difference equation give.
  *
- * Written by a2d. For each sample rate: impulse, pause, noise, silence, from a filter that was just reset.
+ * Written by a2d. For each sample rate: impulse, pause, noise, step, silence, from a filter that was just reset.
  * @name@_failures runs them through any implementation; 0 means that it is right.
  */
 #ifndef @NAME@_VECTORS_H
