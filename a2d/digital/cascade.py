@@ -65,12 +65,20 @@ class Cascade:
             sign * c[..., np.newaxis] * powers / polynomial(c, self.omega)[..., np.newaxis, :]
             for c, sign in ((state.b, 1.0), (state.a, -1.0))
         ]
-        every = np.concatenate(shares, axis=2)
-        every = every.reshape(len(every), -1, every.shape[-1])
-        columns = [np.flatnonzero(group) for group in self.groups.reshape(len(self.groups), -1)]
-        moved = np.stack([every[:, c].sum(axis=1) for c in columns], axis=-1)
-        parts = [moved.real] + ([self.weight_phase * moved.imag] if self.weight_phase else [])
+        parts = [self._by_group(np.concatenate([share.real for share in shares], axis=2))]
+        if self.weight_phase:
+            parts.append(self.weight_phase * self._by_group(np.concatenate([share.imag for share in shares], axis=2)))
         return np.stack(parts, axis=1) * self.weight[:, np.newaxis], None
+
+    def _by_group(self, every: FloatArray) -> FloatArray:
+        """The sum over each group's coefficients of `every` [M, S, 6, G]; shape [M, G, P]."""
+        flat = every.reshape(len(every), -1, every.shape[-1])
+        columns = [np.flatnonzero(group) for group in self.groups.reshape(len(self.groups), -1)]
+        sums = flat[:, [c[0] for c in columns]]
+        for row, c in enumerate(columns):
+            for other in c[1:]:
+                sums[:, row] += flat[:, other]
+        return sums.transpose(0, 2, 1)
 
     def move(self, state: State, ways: object, step: FloatArray) -> State:
         """Every coefficient times the factor of its group; a denominator's v² term stays off z = -1."""

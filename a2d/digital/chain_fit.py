@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -41,12 +41,15 @@ class ChainFit:
         the phase counts.
     added
         How many of the last sections have no analog original.
+    by_count
+        The largest error in dB with each number of sections tried on the way, (sections, error).
     """
 
     sos: FloatArray
     worst: float
     bound: float
     added: int
+    by_count: tuple[tuple[int, float], ...] = ()
 
 
 @dataclass(frozen=True, eq=False)
@@ -95,9 +98,11 @@ def fit_chain(
     task = task_of(b, a, float(sample_rate_hz), band_hz, weight_phase, weight)
     allpass = shape_of(b, a).allpass
     best = fit_from(task, start, allpass, 0, STEPS if extra_sections else STEPS_OF_ONE)
+    by_count = [(len(best.sos), best.worst)]
     for added in range(1, extra_sections + 1):
         best = add_section(task, best, allpass, added)
-    return best
+        by_count.append((len(best.sos), best.worst))
+    return replace(best, by_count=tuple(by_count))
 
 
 def task_of(

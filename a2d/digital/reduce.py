@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from a2d.analog.response import section_response
@@ -46,10 +48,12 @@ def fewest_sections(
     order = by_bend(b, a, task.f_hz)
     order = order if weight_phase else order[~allpass[order]]
     best: ChainFit | None = None
+    by_count = []
     for count in range(1, len(order) + MOST_ADDED + 1):
         best = _with_count(task, start, allpass, order, count, best)
+        by_count.append((count, best.worst))
         if best.worst <= WITHIN * limit_db:
-            return best
+            return replace(best, by_count=tuple(by_count))
     raise ConversionError(
         f"no {len(order) + MOST_ADDED} sections keep the chain within {limit_db:.4g} dB at {sample_rate_hz:g} Hz "
         f"({0.0 if best is None else best.worst:.4g} dB reached)"

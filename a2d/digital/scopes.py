@@ -144,7 +144,8 @@ def _made(order: Order, fit: ChainFit, names: tuple[str, ...]) -> Made:
     """A fit with names: `added.1`, ... for sections without an original."""
     every = (*names, *(f"added.{i + 1}" for i in range(fit.added)))
     proof = f"; no {len(every)} such sections get below {fit.bound:.3g} dB" if fit.bound > 0.0 else ""
-    why = f"fitted together: {fit.worst:.3g} dB{proof}"
+    steps = ", ".join(f"{count} sections {error:.3g} dB" for count, error in fit.by_count)
+    why = f"fitted together: {steps}{proof}"
     match = np.array([natural_frequency_hz(row, order.rate) for row in fit.sos])
     if names == order.names:
         match[: len(names)] = order.match_hz

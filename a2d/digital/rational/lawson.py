@@ -12,6 +12,8 @@ from a2d.digital.rational.linear import solve
 SETTLING = 4
 """Steps with even weights before the reweighting begins."""
 LEAST_WEIGHT = 1e-7
+BLOCK_WORK = 100_000
+"""Multiplications in one matrix product."""
 LEAST_DAMPING, MOST_DAMPING = 1e-13, 1e8
 
 
@@ -81,10 +83,23 @@ def _damped_step(slopes: FloatArray, error: FloatArray, weight: FloatArray, damp
     weighted = rows * root
     scale = 1.0 / np.maximum(np.sqrt((weighted**2).sum(axis=1)), 1e-150)
     weighted *= scale[:, np.newaxis]
-    transposed = weighted.transpose(0, 2, 1)
-    matrix = transposed @ weighted + damping[:, np.newaxis, np.newaxis] * np.eye(unknowns)
-    right = transposed @ (error.reshape(count, parts * grid, 1) * root)
-    return np.asarray(-solve(matrix, right)[..., 0] * scale)
+    both = np.concatenate([weighted, error.reshape(count, parts * grid, 1) * root], axis=-1)
+    product = _in_blocks(both)
+    matrix = product[:, :-1, :-1] + damping[:, np.newaxis, np.newaxis] * np.eye(unknowns)
+    return np.asarray(-solve(matrix, product[:, :-1, -1:])[..., 0] * scale)
+
+
+def _in_blocks(rows: FloatArray) -> FloatArray:
+    """rowsᵀ·rows, [M, R, K] -> [M, K, K], in products too small for a matrix library to start threads on.
+
+    Threads that wait for a busy core cost a step of this size many times its own work.
+    """
+    count, length, columns = rows.shape
+    block = max(BLOCK_WORK // columns**2, 8)
+    padded = np.zeros((count, -(-length // block) * block, columns))
+    padded[:, :length] = rows
+    parts = padded.reshape(count, -1, block, columns)
+    return np.asarray((parts.transpose(0, 1, 3, 2) @ parts).sum(axis=1))
 
 
 def _reweighted(weight: FloatArray, magnitude: FloatArray) -> FloatArray:
