@@ -6,6 +6,7 @@ A part is told by the key that carries its value: `{ resistor = "11k", nodes = [
 
 from __future__ import annotations
 
+import re
 from typing import Any, ClassVar, Literal, TypeAlias
 
 from a2d.design.quantities import (
@@ -24,6 +25,8 @@ from a2d.design.quantities import (
 from a2d.design.structs import DesignStruct, Unrecognised, nearest
 
 GROUND = "gnd"
+MOST_PARTS = 1000
+_NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]*")
 TwoNodes: TypeAlias = tuple[str, str]
 ThreeNodes: TypeAlias = tuple[str, str, str]
 FourNodes: TypeAlias = tuple[str, str, str, str]
@@ -245,8 +248,11 @@ class Network(DesignStruct, frozen=True, kw_only=True):
     parts: dict[str, Part]
 
     def __post_init__(self) -> None:
-        if not self.parts:
-            raise ValueError("parts is empty (allowed one or more)")
+        if not 1 <= len(self.parts) <= MOST_PARTS:
+            raise ValueError(f"parts has {len(self.parts)} parts (allowed 1 to {MOST_PARTS})")
+        wrong = next((name for name in self.parts if not _NAME.fullmatch(name)), None)
+        if wrong is not None:
+            raise ValueError(f"{wrong!r} cannot name a part (allowed a letter, then letters, digits and _)")
 
     @property
     def entry(self) -> Input:

@@ -86,6 +86,14 @@ def test_faults_name_their_place(parts, message):
     assert 'tone.toml: section "tone".network.parts.' in str(caught.value)
 
 
+def test_names_and_number_of_parts():
+    with pytest.raises(DesignError, match=r"'R 1' cannot name a part"):
+        parse_design(HEAD + ENDS + RC.replace("R1", '"R 1"'))
+    many = "".join(f'R{i} = {{ resistor = "1k", nodes = ["in", "out"] }}\n' for i in range(1001))
+    with pytest.raises(DesignError, match=r"parts has 1001 parts \(allowed 1 to 1000\)"):
+        parse_design(HEAD + ENDS + many)
+
+
 def test_faults_of_the_drawing_name_the_section():
     with pytest.raises(DesignError, match=r'node "x" has one connection only .* @ section "tone"'):
         build_chain(parse_design(HEAD + ENDS + RC + 'R2 = { resistor = "1k", nodes = ["out", "x"] }'))

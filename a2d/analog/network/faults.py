@@ -26,7 +26,7 @@ Edge = tuple[str, str]
 
 def faults(network: Network) -> tuple[str, ...]:
     """Every fault of the drawing, in words; empty when the network can be solved as far as its drawing goes."""
-    checks = (_names, _ends, _lonely_nodes, _floating_nodes, _source_loops, _open_op_amps)
+    checks = (_names, _ends, _shorted_parts, _lonely_nodes, _floating_nodes, _source_loops, _open_op_amps)
     found = [text for check in checks for text in check(network)]
     return tuple(found) if found else tuple(_unreached(network))
 
@@ -50,6 +50,12 @@ def _ends(network: Network) -> Iterator[str]:
         yield f'the input is "{GROUND}" itself (allowed any other node)'
     if network.exit.node == network.exit.minus:
         yield f'the output is between "{network.exit.node}" and itself (allowed two nodes)'
+
+
+def _shorted_parts(network: Network) -> Iterator[str]:
+    for name, part in network.parts.items():
+        if isinstance(part, (Resistor, Capacitor, Inductor, Switch)) and part.nodes[0] == part.nodes[1]:
+            yield f'part "{name}" has both of its ends at node "{part.nodes[0]}"'
 
 
 def _lonely_nodes(network: Network) -> Iterator[str]:

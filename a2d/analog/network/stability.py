@@ -8,7 +8,7 @@ import numpy as np
 from a2d.analog.network.parts import lay_out
 from a2d.analog.network.roots import poles_of
 from a2d.arrays import ComplexArray
-from a2d.design.network import Network, OpAmp, OpAmpModel, OpAmpNodes
+from a2d.design.network import ControlledCurrent, ControlledVoltage, Network, OpAmp, OpAmpModel, OpAmpNodes
 from a2d.design.quantities import Hertz
 from a2d.errors import NetworkError
 
@@ -27,7 +27,8 @@ def check_stability(network: Network) -> None:
     NetworkError
         Unstable; the message has the frequency, and the op-amp whose inputs are the wrong way round, if one is.
     """
-    worst = _growing_pole(network)
+    active = any(isinstance(part, (OpAmp, ControlledVoltage, ControlledCurrent)) for part in network.parts.values())
+    worst = _growing_pole(network) if active else None
     if worst is None:
         return
     culprit = next((name for name in _op_amps(network) if _growing_pole(_swapped(network, name)) is None), None)

@@ -32,6 +32,7 @@ def test_a_sound_network_has_no_faults():
         ),
         ({"U1": opamp("out", "gnd", "y"), "R2": r(1e3, "y", "gnd")}, 'op-amp "U1" has no feedback'),
         ({"r1": r(1e3, "in", "out")}, 'the name of part "r1" is there twice but for capitals'),
+        ({"R2": r(1e3, "out", "out")}, 'part "R2" has both of its ends at node "out"'),
         ({"load": r(1e3, "in", "out")}, 'the part "load" has a reserved name'),
     ],
 )
