@@ -35,7 +35,11 @@ def float32_value(text: str) -> float:
     """The binary32 that a float literal stands for."""
     if not text.endswith(("f", "F")):
         raise HeaderError(f"a literal in a float32 table lacks its f ({text!r})")
-    return float(np.float32(_number(text[:-1])))
+    with np.errstate(over="ignore"):
+        value = float(np.float32(_number(text[:-1])))
+    if not np.isfinite(value):
+        raise HeaderError(f"a literal in a float32 table is too large for one ({text!r})")
+    return value
 
 
 def float64_value(text: str) -> float:

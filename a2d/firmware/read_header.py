@@ -137,9 +137,13 @@ def _table(source: _Source, number: Number, rate: float, comment: str) -> Table:
         values=values,
         fractions=tuple(tuple(int(row[c]) for c in columns) for row in fractions),
         output_shift=_output_shift(source, symbol) if number.kind == "fixed" else 0,
-        band_hz=(float(band[1]), float(band[2])) if band else None,
-        proof=tuple(ProvedError(q, unit, float(worst), float(at)) for q, worst, unit, at in _ERROR.findall(comment)),
+        band_hz=(float64_value(band[1]), float64_value(band[2])) if band else None,
+        proof=tuple(_proved(*found) for found in _ERROR.findall(comment)),
     )
+
+
+def _proved(quantity: str, worst: str, unit: str, at_hz: str) -> ProvedError:
+    return ProvedError(quantity, unit, float64_value(worst), float64_value(at_hz))
 
 
 def _array(source: _Source, symbol: str, value: Callable[[str], float]) -> tuple[tuple[float, ...], ...]:

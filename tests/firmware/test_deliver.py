@@ -6,9 +6,11 @@ import dataclasses
 
 import numpy as np
 import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
 
 from a2d.analog.build import build_chain
-from a2d.design.firmware import Firmware
+from a2d.design.firmware import Firmware, FixedNumber
 from a2d.design.read import parse_design
 from a2d.digital.twin import Twin, default_band_hz, make_twin
 from a2d.errors import DesignError, RoundingError
@@ -16,8 +18,11 @@ from a2d.firmware.check import differences
 from a2d.firmware.deliver import Delivery, deliver
 from a2d.firmware.plan import make_plan, same_sections
 from a2d.firmware.read_header import read_header
+from a2d.wordlength.choose import prove
 from tests.support.c_build import SANITIZE, build, run
+from tests.support.chains import chain_of, peaking
 
+AUDIO = (20.0, 20_000.0)
 DESIGN = """
 [design]
 name = "cove_eq"
@@ -150,3 +155,32 @@ def test_a_twin_that_is_unstable_before_rounding_is_refused() -> None:
     bands = tuple(tuple(default_band_hz(t.sample_rate_hz).tolist()) for t in twins)
     with pytest.raises(RoundingError, match='"body" at 96000 Hz is not stable even before rounding'):
         deliver(design, "ab" * 32, chain, twins, bands)
+
+
+@settings(max_examples=60, deadline=None)
+@given(
+    st.lists(
+        st.tuples(st.floats(15.0, 19_000.0), st.floats(0.3, 12.0), st.floats(-15.0, 15.0)), min_size=1, max_size=4
+    ),
+    st.sampled_from([44_100.0, 192_000.0]),
+    st.sampled_from(["float32", FixedNumber(bits=16), FixedNumber(bits=24, fraction=21), FixedNumber(bits=32)]),
+    st.sampled_from(["direct_form_1", "transposed_direct_form_2", "delta", "recommended"]),
+)
+def test_any_bells_are_delivered_stable_or_refused(
+    bells: list, rate: float, number: FixedNumber | str, structure: str
+) -> None:
+    twin = make_twin(chain_of(*(peaking(*bell) for bell in bells)), rate)
+    plan = make_plan(Firmware(number=number, structure=structure), (twin,), (AUDIO,))
+    try:
+        proof = prove(plan.twins[0], plan.number, plan.structure, together=True, band_hz=AUDIO)
+    except RoundingError as error:
+        refusal = str(error)
+        assert "what carries it: " in refusal or "no format here carries it" in refusal
+        assert plan.structure != "delta"  # the difference form carries every bell of the audio band
+        return
+    assert proof.margin > 0.0
+    assert all(np.max(np.abs(np.roots(row[3:]))) < 1.0 for row in proof.rounded.sections)
+    assert proof.error_db <= proof.nearest_db
+    for row in proof.rounded.words.tolist():
+        if isinstance(number, FixedNumber):
+            assert all(-(2 ** (number.bits - 1)) <= word < 2 ** (number.bits - 1) for word in row)

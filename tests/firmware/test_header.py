@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import dataclasses
 import itertools
 import struct
@@ -74,6 +75,19 @@ def test_any_float32_and_any_title_come_back(rows: list, title: str, order: list
 def test_any_double_comes_back(row: tuple, rate: float) -> None:
     header = Header("n", "", "ab" * 32, ("s",), (1.0,), Number("float64"), (Table(rate, (row,)),))
     assert read_header(write_header(header)) == header
+
+
+@given(st.sampled_from(["float32", "fixed"]), st.data())
+def test_any_damage_is_read_or_refused(kind: str, data: st.DataObject) -> None:
+    """Characters deleted, doubled or replaced: never another error than the reader's own."""
+    text = write_header(a_header(kind))
+    for _ in range(data.draw(st.integers(1, 4))):
+        start = data.draw(st.integers(0, len(text)))
+        end = start + data.draw(st.integers(0, 30))
+        new = data.draw(st.sampled_from(["", "0", "-", ".", "e9", "{", '"', "/*", text[start:end] * 2]))
+        text = text[:start] + new + text[end:]
+    with contextlib.suppress(HeaderError):
+        assert len(read_header(text).tables) >= 1
 
 
 def test_a_reformatted_header_reads_the_same() -> None:

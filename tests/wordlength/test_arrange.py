@@ -29,6 +29,18 @@ def test_the_eighth_order_elliptic() -> None:
     )
 
 
+@pytest.mark.parametrize("bits", [16, 24, 32])
+@pytest.mark.parametrize("structure", ["direct_form_1", "delta"])
+def test_the_emitted_words_keep_the_levels(bits: int, structure: str) -> None:
+    """After rounding no boundary lies 1 dB below the output, as the issue asks; nor does any lie above it."""
+    best = best_arrangement(ELLIPTIC, structure)
+    rounded = round_nearest(best.sos, Number("fixed", bits, bits - 1), structure)
+    emitted = as_it_is(rounded.sections, None, structure)
+    assert rounded.output_shift == 0
+    assert np.all(np.abs(emitted.boundary_db) < 0.05)
+    assert emitted.signal_to_noise_db > as_it_is(ELLIPTIC, None, structure).signal_to_noise_db
+
+
 def test_the_search_finds_the_best_of_all_orders() -> None:
     sos = signal.butter(5, [0.02, 0.3], "bandpass", output="sos")
     tried = [scaled(sos, order).signal_to_noise_db for order in itertools.permutations(range(len(sos)))]
