@@ -78,7 +78,7 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
     from a2d.report.findings import findings
     from a2d.report.page import report_page
 
-    notes = [*summary.notes(conversion), *control_notes(conversion.controls)]
+    notes = [*summary.notes(conversion), *control_notes(conversion)]
     try:
         recordings = examples(conversion)
     except AudioError as error:
@@ -102,7 +102,7 @@ def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, n
     controls = controls_table(conversion.controls)
     if controls is not None:
         out.print(controls)
-    for note in [*summary.notes(conversion), *control_notes(conversion.controls)]:
+    for note in [*summary.notes(conversion), *control_notes(conversion)]:
         out.print(f"- {note}")
     out.print("Firmware", style="bold")
     for line in delivery.lines:
