@@ -1,4 +1,4 @@
-"""`a2d spread`: how far units of the hardware differ from one another, and whether the twin's error matters beside it."""
+"""`a2d spread`: how far units of the hardware differ, and whether the twin's error matters beside that."""
 
 from __future__ import annotations
 
@@ -7,8 +7,10 @@ import sys
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 
+import msgspec
 import numpy as np
 
+from a2d.analog.build import build_chain
 from a2d.analog.spread import spread_model
 from a2d.analog.spread_causes import Corners, Sensitivity, corners, sensitivities
 from a2d.analog.spread_draws import SpreadResult, run_spread
@@ -40,7 +42,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
 def run(args: argparse.Namespace) -> int:
     """Draw units, show, write."""
     source = read_design_file(args.design)
-    design = source.design
+    design = msgspec.structs.replace(source.design, controls=())  # as set in the file; a sweep has no part in this
     conversion = convert(design)
     band = conversion.judged[0].comparison.band_hz
     model = spread_model(design, np.geomspace(*band, POINTS))
@@ -92,7 +94,9 @@ def show(
         out.print(f"- {line}")
     if unit_db is not None:
         k = int(np.argmax(np.abs(unit_db)))
-        out.print(f"- The measured unit differs from nominal by up to {abs(unit_db[k]):.3g} dB, at {hertz(result.f_hz[k])}.")
+        out.print(
+            f"- The measured unit differs from nominal by up to {abs(unit_db[k]):.3g} dB, at {hertz(result.f_hz[k])}."
+        )
 
 
 _BANDS = ["frequency", "5 %", "50 %", "95 %", "lowest", "highest", "worst cases", ""]
@@ -111,20 +115,16 @@ def _unit_db(design: Design, f_hz: FloatArray) -> FloatArray | None:
     """The measured unit's level relative to nominal, [F]; None when nothing was measured."""
     if design.spread is None or not design.spread.measured:
         return None
-    unit, nominal = (convert_chain(d, f_hz) for d in (measured_unit(design), design))
+    unit, nominal = (_level_db(d, f_hz) for d in (measured_unit(design), design))
     return unit - nominal
 
 
-def convert_chain(design: Design, f_hz: FloatArray) -> FloatArray:
+def _level_db(design: Design, f_hz: FloatArray) -> FloatArray:
     """The analog level of a design in dB, [F]."""
-    from a2d.analog.build import build_chain
-
     return np.asarray(20.0 * np.log10(np.maximum(np.abs(build_chain(design).response(f_hz)), 1e-300)))
 
 
-def _plots(
-    conversion: Conversion, result: SpreadResult, worst: Corners, causes: list[Sensitivity]
-) -> dict[str, bytes]:
+def _plots(conversion: Conversion, result: SpreadResult, worst: Corners, causes: list[Sensitivity]) -> dict[str, bytes]:
     from a2d.report.spread_plots import TwinError, spread_plots  # matplotlib is loaded only when asked for
 
     analog = np.abs(conversion.chain.response(result.f_hz))
