@@ -21,7 +21,7 @@ DELAY_SEARCH_SECONDS = 0.2
 DELAYS_A_TURN = 64
 NOTCH_FROM_DB = -24.0  # a cut so deep is meant as a notch
 FIRST_ORDER = ("low_shelf_1", "lowpass_1", "highpass_1")
-MERGE_OCTAVES = 1.5
+MERGE_OCTAVES = 3.0
 
 
 def all_at_once(problem: Problem, coupling: bool, effort: Effort, most: int) -> tuple[Model, list[OrderTried]]:

@@ -13,7 +13,7 @@ from a2d.analog.fit_solve import TINY, Model, Problem, evaluate, misfit, solve
 from a2d.analog.response import section_response
 from a2d.arrays import ComplexArray, FloatArray
 
-SHORT = 8  # steps of a first try
+SHORT, LONGER = 6, 14  # steps of a first try and of the best ones; the last steps to the very bottom come at the end
 
 
 @dataclass(frozen=True)
@@ -44,7 +44,7 @@ def with_one_more(problems: Sequence[Problem], models: Sequence[Model], effort: 
     ]
     common = problems[0]
     tried.sort(key=lambda pair: loss_of(common, pair[0]))
-    finished = [solve(problem, candidate)[0] for candidate, problem in tried[: effort.kept + 1]]
+    finished = [solve(problem, candidate, LONGER)[0] for candidate, problem in tried[: effort.kept + 1]]
     finished.sort(key=lambda model: loss_of(common, model))
     return finished[: effort.kept]
 

@@ -15,7 +15,7 @@ from tests.support.chains import chain_of, highpass, peaking
 from tests.support.device import DELAY_S, device
 
 RATE = 48_000.0
-PLAN = SweepPlan(RATE, 4.0)
+PLAN = SweepPlan(RATE, 2.5)
 PLAYED = PLAN.signal()
 CHAIN = chain_of(highpass(28.0, 0.8), peaking(110.0, 3.0, -7.0), peaking(3_200.0, 1.4, 4.5))
 OTHER = chain_of(highpass(60.0, 0.8), peaking(900.0, 1.0, 6.0))
