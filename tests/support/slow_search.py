@@ -23,9 +23,9 @@ def grid(b, a, low, high, count=160):
 class Search:
     """The error of one section and its slopes over the free logarithms."""
 
-    def __init__(self, b, a, rate, band=(20.0, 20_000.0)):
+    def __init__(self, b, a, rate, band=(20.0, 20_000.0), count=160):
         self.b, self.a, self.rate = np.asarray(b, float), np.asarray(a, float), rate
-        self.f = grid(self.b, self.a, *band)
+        self.f = grid(self.b, self.a, *band, count)
         self.t = np.tan(np.pi * self.f / rate) ** 2
         w = 2.0 * np.pi * self.f
         self.target = DB * np.log(self._power(self.b, w * w) / self._power(self.a, w * w))
