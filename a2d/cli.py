@@ -14,7 +14,7 @@ from types import ModuleType
 from a2d.errors import A2dError
 
 # Each is a module a2d.commands.NAME with HELP, add_options(parser) and run(args) -> exit status.
-COMMANDS = ("convert", "check", "render", "measure", "fit", "list")
+COMMANDS = ("convert", "check", "render", "measure", "fit", "list", "controls", "spread")
 BAD_INPUT = 2
 
 

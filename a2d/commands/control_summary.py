@@ -7,6 +7,7 @@ from rich.console import RenderableType
 from a2d.commands.terminal import hertz, table
 from a2d.compare.control_tables import ControlTable
 from a2d.compare.positions import MAGNITUDE
+from a2d.conversion import Conversion
 
 
 def controls_table(tables: tuple[ControlTable, ...]) -> RenderableType | None:
@@ -40,11 +41,15 @@ def control_breaches(tables: tuple[ControlTable, ...]) -> list[str]:
     ]
 
 
-def control_notes(tables: tuple[ControlTable, ...]) -> list[str]:
+def control_notes(conversion: Conversion) -> list[str]:
     """What the reader of a table should know."""
-    return [
+    notes = [
         f"{control.group.name}: at {control.exchanged} positions the order of the sections is not continuous "
         "(roots of two sections pair up there), and interpolation next to them is as inexact as stated"
-        for control in tables
+        for control in conversion.controls
         if control.exchanged
     ]
+    limits = conversion.design.limits
+    if conversion.controls and limits is not None and (limits.mask is not None or limits.table):
+        notes.append("controls: the mask of [limits] is judged at the design's own setting only")
+    return notes

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import argparse
 import sys
+from dataclasses import replace
 
 from a2d.commands import summary
 from a2d.commands.banks import bank_files
@@ -13,6 +14,7 @@ from a2d.commands.options import add_design, add_out
 from a2d.commands.terminal import console
 from a2d.conversion import Conversion, convert
 from a2d.design.read import DesignFile, read_design_file
+from a2d.design.unit import measured_unit
 from a2d.errors import AudioError
 from a2d.files import write_all
 from a2d.firmware.deliver import Delivery
@@ -27,12 +29,15 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     add_out(parser)
     parser.add_argument("--coefficients", action="store_true", help="show every coefficient in the terminal")
     parser.add_argument("--plots", action="store_true", help="write plots as SVG and PNG")
+    parser.add_argument("--measured", action="store_true", help="the unit of [spread.measured], not the nominal one")
     parser.add_argument("--report", action="store_true", help="write a report page: one HTML file with all of it")
 
 
 def run(args: argparse.Namespace) -> int:
     """Convert, show, write; 1 when a limit is broken."""
     source = read_design_file(args.design)
+    if args.measured:
+        source = replace(source, design=measured_unit(source.design))
     conversion = convert(source.design)
     delivery = delivery_of(conversion, source.sha256)
     files = output_files(args, source, conversion, delivery)
@@ -78,7 +83,7 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
     from a2d.report.findings import findings
     from a2d.report.page import report_page
 
-    notes = [*summary.notes(conversion), *control_notes(conversion.controls)]
+    notes = [*summary.notes(conversion), *control_notes(conversion)]
     try:
         recordings = examples(conversion)
     except AudioError as error:
@@ -102,7 +107,7 @@ def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, n
     controls = controls_table(conversion.controls)
     if controls is not None:
         out.print(controls)
-    for note in [*summary.notes(conversion), *control_notes(conversion.controls)]:
+    for note in [*summary.notes(conversion), *control_notes(conversion)]:
         out.print(f"- {note}")
     out.print("Firmware", style="bold")
     for line in delivery.lines:

@@ -6,7 +6,7 @@ move is evaluated once, and only the highest local maxima are searched between g
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from typing import TypeAlias
 
@@ -69,7 +69,7 @@ class PositionErrors:
 
 
 def position_errors(
-    pieces: list[Piece], band_hz: FloatArray, rate_hz: float, reference_rate_hz: float | None = None
+    pieces: Sequence[Piece], band_hz: FloatArray, rate_hz: float, reference_rate_hz: float | None = None
 ) -> PositionErrors:
     """Candidate minus reference at N positions.
 
@@ -99,6 +99,17 @@ def position_errors(
     return PositionErrors(band_hz, worst, at_hz)
 
 
+def position_levels_db(
+    pieces: Sequence[Piece], f_hz: FloatArray, rate_hz: float, rows: IntArray
+) -> tuple[FloatArray, FloatArray]:
+    """Levels of analog reference and digital candidate in dB at the positions `rows` [R]; [R, F] each."""
+    sides = []
+    for side, rate in (("reference", None), ("candidate", rate_hz)):
+        curves = [(_curves(getattr(p, side), f_hz, rate), p.index[rows]) for p in pieces]
+        sides.append(20.0 * np.log10(np.maximum(np.abs(_product(curves)[0]), 1e-300)))
+    return sides[0], sides[1]
+
+
 @dataclass(frozen=True, eq=False)
 class _Block:
     """Reference and candidate [n, S, 6] of every piece at some positions, to look between the grid's points."""
@@ -116,7 +127,7 @@ class _Block:
         return _errors(sides[0], sides[1], self.floor)
 
 
-def _common_grid(pieces: list[Piece], band_hz: FloatArray, rate_hz: float | None) -> FloatArray:
+def _common_grid(pieces: Sequence[Piece], band_hz: FloatArray, rate_hz: float | None) -> FloatArray:
     """Frequencies for all positions, with more of them around narrow sections."""
     even = np.geomspace(band_hz[0], band_hz[1], _POINTS)
     extra = [around_narrow(p.reference[..., k : k + 3], rate_hz) for p in pieces for k in (0, 3)]

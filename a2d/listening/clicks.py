@@ -9,7 +9,7 @@ from scipy import signal
 
 from a2d import checks
 from a2d.arrays import FloatArray
-from a2d.listening.moving import POLICIES, STEPS, Change, render_moving
+from a2d.listening.moving import FORMS, POLICIES, Change, render_moving
 
 ABOVE_HZ = 2000.0  # the tone and what the sections do to it lie below, a click reaches beyond
 PHASES = 8  # moments of the tone's period at which the change is tried
@@ -67,7 +67,7 @@ def click_levels(before: FloatArray, after: FloatArray, test: ClickTest) -> list
     return [
         Click(policy, structure, float(np.max(click_dbfs(before, after, test, policy, structure))))
         for policy in POLICIES
-        for structure in STEPS
+        for structure in FORMS
     ]
 
 

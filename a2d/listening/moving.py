@@ -58,7 +58,7 @@ def render_moving(sos: FloatArray, samples: FloatArray, structure: str, change: 
     samples
         Shape [N] or [N, channels].
     structure
-        A name in `STEPS`.
+        A name in `FORMS`.
     change
         Policy, block and ramp.
 
@@ -71,8 +71,8 @@ def render_moving(sos: FloatArray, samples: FloatArray, structure: str, change: 
     ParameterError
         Fewer samples than blocks need, or an unknown structure.
     """
-    if structure not in STEPS:
-        raise ParameterError(f"there is no structure {structure!r} (allowed: {', '.join(STEPS)})")
+    if structure not in FORMS:
+        raise ParameterError(f"there is no structure {structure!r} (allowed: {', '.join(FORMS)})")
     channels = samples.reshape(len(samples), -1)
     if len(channels) <= (len(sos) - 1) * change.block:
         raise ParameterError(f"{len(sos)} blocks of {change.block} samples need more samples ({len(channels)})")
@@ -104,18 +104,30 @@ def _ramp(sos: FloatArray, samples: FloatArray, structure: str, change: Change) 
 
 
 def _gliding(sos: FloatArray, samples: FloatArray, structure: str, change: Change, *, clear: bool) -> FloatArray:
-    step = STEPS[structure]
+    form = FORMS[structure]
     state = np.zeros((4, samples.shape[1]))
     out = np.empty_like(samples)
     for rows, before, after in _blocks(sos, len(samples), change.block):
-        start, goal = (values_of(c[np.newaxis], structure)[0] for c in (before, after))
-        moves = bool(np.any(start != goal))
+        moves = bool(np.any(before != after))
         if clear and moves:
             state[:] = 0.0
-        for n in range(rows.start, rows.stop):
-            part = min((n - rows.start + 1) / change.ramp, 1.0) if moves else 1.0
-            out[n] = step(goal if part == 1.0 else start + (goal - start) * part, state, samples[n])
+        ramp = min(change.ramp - 1, rows.stop - rows.start) if moves else 0
+        start, goal = (values_of(c[np.newaxis], structure)[0] for c in (before, after))
+        for k in range(ramp):
+            n = rows.start + k
+            out[n] = form.step(start + (goal - start) * ((k + 1) / change.ramp), state, samples[n])
+        steady = slice(rows.start + ramp, rows.stop)
+        out[steady] = _steady(after, form, state, samples[steady])
     return out
+
+
+def _steady(c: FloatArray, form: Form, state: FloatArray, x: FloatArray) -> FloatArray:
+    """Constant coefficients `c` [6]: the same equation all at once, by the sums of transposed direct form II."""
+    if not len(x):
+        return x
+    y, sums = signal.lfilter(c[:3], c[3:], x, axis=0, zi=form.to_sums(c, state))
+    form.from_sums(state, sums, x, y)
+    return np.asarray(y)
 
 
 def _cross_fade(sos: FloatArray, samples: FloatArray, structure: str, change: Change) -> FloatArray:
@@ -172,9 +184,55 @@ def _delta(c: FloatArray, state: FloatArray, x: FloatArray) -> FloatArray:
     return np.asarray(y)
 
 
-STEPS: dict[str, Step] = {
-    "direct_form_1": _direct_form_1,
-    "transposed_direct_form_2": _transposed_direct_form_2,
-    "delta": _delta,
+def _sums_of_samples(c: FloatArray, state: FloatArray) -> FloatArray:
+    x1, x2, y1, y2 = state
+    return np.stack([c[1] * x1 + c[2] * x2 - c[4] * y1 - c[5] * y2, c[2] * x1 - c[5] * y1])
+
+
+def _keep_samples(state: FloatArray, sums: FloatArray, x: FloatArray, y: FloatArray) -> None:
+    for k, signals in ((0, x), (2, y)):
+        state[k + 1] = signals[-2] if len(signals) > 1 else state[k]
+        state[k] = signals[-1]
+
+
+def _own_sums(c: FloatArray, state: FloatArray) -> FloatArray:
+    return state[:2].copy()
+
+
+def _keep_sums(state: FloatArray, sums: FloatArray, x: FloatArray, y: FloatArray) -> None:
+    state[:2] = sums
+
+
+def _sums_of_differences(c: FloatArray, state: FloatArray) -> FloatArray:
+    """v1 = s1, v2 = s1 + s2: put y = b0·x + s1 into both structures' equations."""
+    return np.stack([state[0], state[1] - state[0]])
+
+
+def _keep_differences(state: FloatArray, sums: FloatArray, x: FloatArray, y: FloatArray) -> None:
+    state[0], state[1] = sums[0], sums[0] + sums[1]
+
+
+@dataclass(frozen=True)
+class Form:
+    """A structure.
+
+    Attributes
+    ----------
+    step
+        One sample: the section's own values [5], its state [4, channels] (changed), the input [channels].
+    to_sums, from_sums
+        The state as the two sums of transposed direct form II, for constant coefficients [6]; and back, with the
+        input and output since.
+    """
+
+    step: Step
+    to_sums: Callable[[FloatArray, FloatArray], FloatArray]
+    from_sums: Callable[[FloatArray, FloatArray, FloatArray, FloatArray], None]
+
+
+FORMS: dict[str, Form] = {
+    "direct_form_1": Form(_direct_form_1, _sums_of_samples, _keep_samples),
+    "transposed_direct_form_2": Form(_transposed_direct_form_2, _own_sums, _keep_sums),
+    "delta": Form(_delta, _sums_of_differences, _keep_differences),
 }
-"""One sample of a section: its values [5], its state [4, channels], the input [channels]."""
+"""The structures by name."""

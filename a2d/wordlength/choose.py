@@ -16,8 +16,7 @@ from a2d.wordlength.rounding import Rounded, round_nearest
 from a2d.wordlength.stability import is_stable, margin_to_circle
 from a2d.wordlength.structures import STRUCTURES, TITLES
 
-UNHEARD_DB = 1e-4  # nearest rounding is left alone below this: nothing is left to gain by a search
-INAUDIBLE_DB = 1e-3  # bits are given up for a large numerator up to this; moving its gain costs noise instead
+INAUDIBLE_DB = 1e-3  # bits for a large numerator, or a zero kept at d.c., may cost this much
 ACCEPTED_DB = 0.01  # what a format or structure may move the response to be advised
 REFUSED_DB = 1.0  # a stable neighbour of an unstable rounding is no rounding of the design when it is further off
 
@@ -97,11 +96,12 @@ def prove_or_refuse(
     rounded, nearest_db = _nearest(sos, number, structure, rate_hz, band)
     stable = is_stable(rounded.values, structure)
     error_db = nearest_db
-    if together and nearest_db > UNHEARD_DB:
+    if together and number.kind != "float64":
         searched = round_together(rounded, sos, rate_hz, band)
-        searched_db = deviation_db(sos, searched.sos, rate_hz, band)
-        if searched_db < nearest_db:
-            rounded, error_db = searched, searched_db
+        if not np.array_equal(searched.words, rounded.words):
+            searched_db = deviation_db(sos, searched.sos, rate_hz, band)
+            if searched_db < max(nearest_db, INAUDIBLE_DB):
+                rounded, error_db = searched, searched_db
     _refuse_unstable(rounded, stable, error_db, twin.names)
     margins = margin_to_circle(rounded.sections)
     return Proof(rounded, nearest_db, error_db, float(np.min(margins)), float(np.min(margin_to_circle(sos))))

@@ -3,7 +3,7 @@
 For every feedback pair within `REACH` steps of the nearest one, the best real numerator is the solution of a linear
 least-squares problem (the numerator is linear in its coefficients); its neighbours are then the candidates. A zero at
 d.c., at half the rate or on the unit circle is kept exactly: the numerator moves only in directions that keep it. The
-nearest rounding is always among the candidates, so the result is never worse than it.
+result is never worse than the nearest rounding, but where that one has lost such a zero: keeping it may cost 0.001 dB.
 """
 
 from __future__ import annotations
@@ -24,6 +24,7 @@ _FEEDBACK_STEPS = np.array(list(itertools.product(range(-REACH, REACH + 1), repe
 _PROMISING = 6  # feedback pairs whose numerator's neighbours are tried
 _POINTS = 40  # even points of the grid, to which those around each pole and zero are added
 _GOOD_ENOUGH = 2e-6  # nepers, 1.7e-5 dB: a section that is off by less is left alone
+_FOR_A_ZERO = 1e-4  # nepers, 0.001 dB: what a zero kept exactly at d.c. or half the rate may cost elsewhere
 _TIE = 1e-3
 _TINY = 1e-9  # a numerator's sum below this part of its largest value means a zero at d.c. (or half the rate)
 # by (zero at d.c., zeros on the circle, zero at half the rate): the directions in b0, b1, b2 that keep them
@@ -60,11 +61,26 @@ def _best_row(
     f = angular_grid(exact[np.newaxis], rate_hz, band_hz, _POINTS)
     wanted = section_response(exact, f, rate_hz) * 2.0 ** float(rounded.moved[row])
     basis = _basis(f, rate_hz, rounded.structure)
-    if _errors(nearest[np.newaxis], rounded, row, wanted, basis)[0] < _GOOD_ENOUGH:
+    at_nearest = _errors(nearest[np.newaxis], rounded, row, wanted, basis)[0]
+    moves = _moves(rounded, row, exact)
+    kept = _keeps_zeros(nearest[:3], moves)
+    if kept and at_nearest < _GOOD_ENOUGH:
         return np.asarray(nearest)
-    candidates = np.concatenate([nearest[np.newaxis], _candidates(rounded, row, exact, wanted, basis)])
+    candidates = _candidates(rounded, row, moves, wanted, basis)
+    if len(candidates) == 0:
+        return np.asarray(nearest)
     error = _errors(candidates, rounded, row, wanted, basis)
-    return np.asarray(candidates[int(np.argmin(error))])
+    best = int(np.argmin(error))
+    allowed = at_nearest if kept else max(2.0 * at_nearest, _FOR_A_ZERO)
+    return np.asarray(candidates[best] if error[best] < allowed else nearest)
+
+
+def _keeps_zeros(forward: FloatArray, moves: FloatArray) -> bool:
+    """Whether a numerator [3] is made of whole numbers of moves [M, 3], and so has its zeros exactly."""
+    if len(moves) == 0:
+        return bool(np.all(forward == 0.0))
+    count = np.rint(np.linalg.lstsq(moves.T, forward, rcond=None)[0])
+    return bool(np.all(count @ moves == forward))
 
 
 def _errors(words: FloatArray, rounded: Rounded, row: int, wanted: ComplexArray, basis: ComplexArray) -> FloatArray:
@@ -98,12 +114,11 @@ def _step(rounded: Rounded, row: int) -> FloatArray:
     return np.where(words == 0.0, 0.0, np.abs(np.spacing(words.astype(np.float32))).astype(np.float64))
 
 
-def _candidates(rounded: Rounded, row: int, exact: FloatArray, wanted: ComplexArray, basis: ComplexArray) -> FloatArray:
+def _candidates(rounded: Rounded, row: int, moves: FloatArray, wanted: ComplexArray, basis: ComplexArray) -> FloatArray:
     """Words [N, 5]: the most promising feedback pairs, each with the neighbours of its best numerator."""
     step, unit = _step(rounded, row), np.ldexp(1.0, -rounded.fractions[row].astype(np.int32))
     feedback = np.unique(rounded.words[row, 3:] + _FEEDBACK_STEPS * step[3:], axis=0)
     denominator = basis[0] + (feedback * unit[3:]) @ basis[1:]
-    moves = _moves(rounded, row, exact, step[:3])
     best = _best_numerators(moves * unit[:3], denominator, wanted, basis)
     centres = np.concatenate([best @ moves, feedback], axis=-1)
     promising = np.argsort(_errors(centres, rounded, row, wanted, basis), kind="stable")[:_PROMISING]
@@ -114,8 +129,9 @@ def _candidates(rounded: Rounded, row: int, exact: FloatArray, wanted: ComplexAr
     return np.asarray(together[_in_range(together, rounded)])
 
 
-def _moves(rounded: Rounded, row: int, exact: FloatArray, step: FloatArray) -> FloatArray:
+def _moves(rounded: Rounded, row: int, exact: FloatArray) -> FloatArray:
     """Steps of the numerator's words that keep its zeros where they are, shape [M, 3]."""
+    step = _step(rounded, row)[:3]
     directions = _directions(rounded, row, exact)
     if directions is None or np.any((np.abs(directions).sum(axis=0) > 0) & (step == 0.0)):
         directions = np.eye(3)[step > 0.0]
@@ -128,7 +144,7 @@ def _directions(rounded: Rounded, row: int, exact: FloatArray) -> FloatArray | N
     size = _TINY * np.max(np.abs(exact[:3]))
     at_dc, on_circle, at_half = (bool(abs(v) <= size) for v in (b0 + b1 + b2, b2 - b0, b0 - b1 + b2))
     if rounded.structure == "delta":
-        return _difference_directions(rounded.words[row], on_circle, at_half)
+        return _difference_directions(rounded.words[row, :3], on_circle, at_half)
     if at_dc != at_half and b2 == 0.0:
         return np.array([[1.0, -1.0 if at_dc else 1.0, 0.0]])
     found = _DIRECTIONS.get((at_dc, on_circle, at_half))
@@ -139,8 +155,10 @@ def _difference_directions(words: FloatArray, on_circle: bool, at_half: bool) ->
     """The same in the difference form, whose numerator is b0, 2·b0 + b1, b0 + b1 + b2.
 
     A zero at d.c. is a last word of zero, zeros on the circle make the last two equal, and with a zero at half the
-    rate as well all three are one number times 1, 4, 4.
+    rate as well all three are one number times 1, 4, 4. A first-order zero at d.c. makes the first two equal.
     """
+    if words[2] == 0.0 and words[0] == words[1]:
+        return np.array([[1.0, 1.0, 0.0]])
     if not on_circle or words[1] == 0.0 or words[1] != words[2]:
         return None
     if at_half and words[1] in (words[0], 4.0 * words[0]):

@@ -8,7 +8,7 @@ import scipy.signal as ss
 
 from a2d.errors import ParameterError
 from a2d.listening.clicks import ClickTest, advice, click_dbfs, click_levels, high_pass_taps, ramp_needed_ms
-from a2d.listening.moving import POLICIES, STEPS, Change, render_moving
+from a2d.listening.moving import FORMS, POLICIES, Change, render_moving
 from tests.support.prototypes import section
 
 RATE = 48_000.0
@@ -27,13 +27,22 @@ def noise(count: int = 2000) -> np.ndarray:
     return np.random.default_rng(2).standard_normal((count, 2))
 
 
-@pytest.mark.parametrize("structure", STEPS)
+@pytest.mark.parametrize("structure", FORMS)
 @pytest.mark.parametrize("policy", POLICIES)
 def test_without_a_change_every_policy_is_a_plain_filter(structure: str, policy: str) -> None:
     sos = np.concatenate([bell(6.0), bell(-4.0, 900.0)])
     out = render_moving(np.stack([sos, sos, sos]), noise(), structure, Change(policy, 300, 64))
     # The structures add the same products in another order: rounding, times the gain at low frequencies.
     np.testing.assert_allclose(out, ss.sosfilt(sos, noise(), axis=0), rtol=0, atol=1e-10)
+
+
+@pytest.mark.parametrize("structure", FORMS)
+def test_a_ramp_between_equal_coefficients_is_the_plain_filter(structure: str) -> None:
+    """Each structure's own equation, sample by sample, against scipy's: the ramp's steps are of one part in 1e14."""
+    sos = np.concatenate([bell(6.0), bell(-4.0, 900.0)])
+    nearly = sos * np.array([1 + 1e-14, 1, 1, 1, 1, 1])
+    out = render_moving(np.stack([sos, nearly, sos]), noise(), structure, Change("ramp", 600, 500))
+    np.testing.assert_allclose(out, ss.sosfilt(sos, noise(), axis=0), rtol=0, atol=1e-9)
 
 
 def test_held_direct_form_1_keeps_past_samples() -> None:
@@ -97,7 +106,7 @@ def test_the_measure_itself() -> None:
 
 def test_every_policy_in_every_structure_has_a_figure() -> None:
     levels = {(c.policy, c.structure): c.dbfs for c in click_levels(bell(6.0), bell(5.0), ClickTest(RATE))}
-    assert set(levels) == {(p, s) for p in POLICIES for s in STEPS}
+    assert set(levels) == {(p, s) for p in POLICIES for s in FORMS}
     assert levels["ramp", "direct_form_1"] < levels["hold", "direct_form_1"] < levels["clear", "direct_form_1"]
 
 

@@ -18,7 +18,7 @@ from a2d.wordlength.neighbours import round_together
 from a2d.wordlength.rounding import Rounded, error_in_steps, round_nearest
 from a2d.wordlength.stability import is_stable, margin_to_circle
 from a2d.wordlength.structures import STRUCTURES, sos_of, values_of
-from tests.support.chains import chain_of, highpass, peaking
+from tests.support.chains import chain_of, first_order_highpass, highpass, lowpass, peaking
 
 AUDIO = (20.0, 20_000.0)
 
@@ -158,11 +158,28 @@ def test_rounding_together_is_never_worse(number: Number, structure: str) -> Non
     assert better >= audible / 2
 
 
-def test_rounding_together_keeps_the_zero_at_dc() -> None:
-    twin = a_twin(highpass(60.0, 0.7))
-    for structure in ("direct_form_1", "delta"):
-        rounded = round_together(round_nearest(twin.sos, Number("fixed", 24, 22), structure), twin.sos, 48e3, AUDIO)
-        assert np.sum(rounded.sos[0, :3]) == 0.0
+@pytest.mark.parametrize("number", [Number("float32"), Number("fixed", 24, 22), Number("fixed", 32, 30)])
+@pytest.mark.parametrize("structure", ["direct_form_1", "delta"])
+def test_zeros_stay_where_they_are(number: Number, structure: str) -> None:
+    """At d.c. (high-pass of both orders), at half the rate (low-pass), on the circle (notch): exactly, in the words."""
+    w = 2 * np.pi * 900.0
+    notch = ([1.0, 0.0, w * w], [1.0, w, w * w])
+    sections = (highpass(31.0, 0.7), first_order_highpass(40.0), lowpass(7_000.0, 0.9), notch)
+    proof = prove(a_twin(*sections), number, structure, together=True, band_hz=AUDIO)
+    b0, b1, b2 = proof.rounded.sections[:, :3].T
+    assert b0[0] + b1[0] + b2[0] == 0.0
+    assert b0[1] + b1[1] == 0.0
+    assert b2[1] == 0.0
+    assert b0[2] - b1[2] + b2[2] == 0.0
+    assert b0[3] == b2[3]
+
+
+def test_nearest_rounding_would_lose_the_zero_at_dc() -> None:
+    lost = 0
+    for f0 in (31.0, 37.0, 43.0, 59.0):
+        rounded = round_nearest(a_twin(highpass(f0, 0.7)).sos, Number("fixed", 32, 30), "direct_form_1")
+        lost += np.sum(rounded.sections[0, :3]) != 0.0
+    assert lost >= 1
 
 
 def test_a_rounded_cascade_is_what_its_words_say() -> None:
