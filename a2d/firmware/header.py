@@ -68,8 +68,12 @@ def _number_in_words(header: Header) -> Iterator[str]:
         yield f" * Numbers are {header.number.kind}."
         return
     bits, fraction = header.number.bits, header.number.fraction
-    yield f" * Numbers are words of {bits} bits, sign included, with {fraction} fraction bits"
-    yield " * less the shift of the table; w stands for w / 2^fraction, and each table gives its fraction."
+    if header.structure == "delta":
+        yield f" * Numbers are words of {bits} bits, sign included; w stands for w / 2^fraction, each word with its own"
+        yield " * fraction bits, which stand in a second table."
+    else:
+        yield f" * Numbers are words of {bits} bits, sign included; w stands for w / 2^fraction. All words of a sample rate"
+        yield f" * have {fraction} fraction bits less the rate's shift; what is left stands in a second table."
     yield f" * Samples are words of {header.sample_bits} bits with {header.sample_fraction} fraction bits."
 
 
@@ -123,7 +127,7 @@ def _guards(header: Header) -> Iterator[str]:
     word = word_type(header)
     size = {"float": 4, "double": 8, "int16_t": 2, "int32_t": 4}[word]
     yield ""
-    yield f"/* The tables are meant for a {word} of {size} bytes; the build stops here where it has another size. */"
+    yield f"/* The tables need {size} bytes in {word}; where it has another size the build stops here. */"
     yield f"typedef char {header.name}_{word}_has_{size}_bytes[sizeof({word}) == {size} ? 1 : -1];"
     yield from _expected_number(header)
 
