@@ -72,7 +72,7 @@ def _number_in_words(header: Header) -> Iterator[str]:
         yield f" * Numbers are words of {bits} bits, sign included; w stands for w / 2^fraction, each word with its own"
         yield " * fraction bits, which stand in a second table."
     else:
-        yield f" * Numbers are words of {bits} bits, sign included; w stands for w / 2^fraction. All words of a sample rate"
+        yield f" * Numbers are words of {bits} bits, sign included; w stands for w / 2^fraction. The words of a rate"
         yield f" * have {fraction} fraction bits less the rate's shift; what is left stands in a second table."
     yield f" * Samples are words of {header.sample_bits} bits with {header.sample_fraction} fraction bits."
 
