@@ -31,6 +31,7 @@ def add_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--plots", action="store_true", help="write plots as SVG and PNG")
     parser.add_argument("--measured", action="store_true", help="the unit of [spread.measured], not the nominal one")
     parser.add_argument("--report", action="store_true", help="write a report page: one HTML file with all of it")
+    parser.add_argument("--wav", action="store_true", help="write test signals through analog model and twin, as WAV")
 
 
 def run(args: argparse.Namespace) -> int:
@@ -43,7 +44,8 @@ def run(args: argparse.Namespace) -> int:
     files = output_files(args, source, conversion, delivery)
     write_all(args.out, files)
     show(args, conversion, delivery, list(files))
-    return report_breaches(conversion, delivery)
+    sound = _sound(args) if args.wav else 0
+    return max(sound, report_breaches(conversion, delivery))
 
 
 def output_files(
@@ -75,6 +77,15 @@ def _plots(conversion: Conversion) -> dict[str, bytes]:
         table.name,
         table.title or table.name,
     )
+
+
+def _sound(args: argparse.Namespace) -> int:
+    """What `a2d render` writes of itself, and its exit status."""
+    from a2d.commands import render  # scipy.signal and soundfile are loaded only when asked for
+
+    parser = argparse.ArgumentParser()
+    render.add_options(parser)
+    return render.run(parser.parse_args([str(args.design), "--out", str(args.out)]))
 
 
 def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> bytes:

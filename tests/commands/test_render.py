@@ -76,6 +76,17 @@ def test_audio_file_level_matched_flac_at_its_own_rate(design: Path, tmp_path: P
     assert set(log["level_match_offset_db"]) == {"analog", "twin"}
 
 
+def test_convert_writes_them_too(design: Path, tmp_path: Path) -> None:
+    assert main(["convert", str(design), "--out", str(tmp_path / "o"), "--wav"]) == 0
+    names = {p.name for p in (tmp_path / "o").iterdir()}
+    assert {
+        "pier_eq.h",
+        "pier_eq.render.json",
+        "pier_eq.pink.48000.twin.wav",
+        "pier_eq.sines.48000.analog.wav",
+    } <= names
+
+
 def test_overs_end_with_status_one(design: Path, tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
     arguments = [
         "render",
