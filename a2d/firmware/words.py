@@ -35,7 +35,7 @@ def lines(plan: Plan, proofs: tuple[Proof, ...], arithmetic: Arithmetic | None) 
 def rounding_line(twin: Twin, proof: Proof) -> str:
     """What rounding did at one rate."""
     rounded = proof.rounded
-    loss = f", shift {rounded.shift}: {rounded.shift} fraction bits lost," if rounded.shift else ""
+    loss = f", shift {rounded.shift} (fraction bits lost: {rounded.shift})" if rounded.shift else ""
     gain = f", output shift {rounded.output_shift}" if rounded.output_shift else ""
     alone = "" if proof.nearest_db == proof.error_db else f" ({proof.nearest_db:.2g} dB if each were rounded alone)"
     return (
@@ -74,11 +74,10 @@ def _behaviour_line(twin: Twin, proof: Proof, arithmetic: Arithmetic) -> str:
     silence = int(np.clip(_DECAY / proof.margin, *_SILENCE))
     rest = zero_input(proof.rounded, arithmetic, silence)
     noise = measured_noise(proof.rounded, arithmetic, quiet_noise(_MEASURED, arithmetic))
-    ringing = f"rings on at {rest.amplitude} steps of the last bit" if rest.amplitude else "comes to rest"
     return (
         f"{twin.sample_rate_hz:g} Hz, simulated: after a full-scale burst and {silence} samples of silence it "
-        f"{ringing} ({sum(rest.overflows)} samples limited in the burst); noise {noise.dbfs:.0f} dBFS, "
-        f"bias {noise.bias:+.2f} steps"
+        f"{rest.in_words} ({sum(rest.overflows)} samples limited in the burst); noise {noise.dbfs:.0f} dBFS, "
+        f"bias {noise.bias:.2f} of the last bit"
     )
 
 

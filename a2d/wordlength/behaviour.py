@@ -15,6 +15,7 @@ from a2d.wordlength.simulate_float import simulate_float
 
 BURST = 256  # samples at full scale before the silence
 SETTLE = 2048
+_STILL_FALLING = 0.97  # a limit cycle repeats itself
 
 
 @dataclass(frozen=True)
@@ -42,12 +43,24 @@ class ZeroInput:
     amplitude
         The largest |sample| in the last quarter of the silence, in steps of the last bit; 0 when the cascade came
         to rest.
+    before
+        The same in the quarter before.
     overflows
         How often each section, and the output's shift, overflowed during the burst.
     """
 
     amplitude: int
+    before: int
     overflows: tuple[int, ...]
+
+    @property
+    def in_words(self) -> str:
+        """Whether the cascade rests, is still on its way, or rings on."""
+        if self.amplitude == 0:
+            return "comes to rest"
+        if self.amplitude < _STILL_FALLING * self.before:
+            return f"is still decaying, at {self.amplitude} times the last bit"
+        return f"rings on at {self.amplitude} times the last bit"
 
 
 def exactly(rounded: Rounded) -> Rounded:
@@ -73,7 +86,9 @@ def zero_input(rounded: Rounded, arithmetic: Arithmetic, silence: int = 20_000) 
     top = arithmetic.highest
     burst = [top if n // 16 % 2 == 0 else -top - 1 for n in range(BURST)]
     run = simulate_fixed(rounded, arithmetic, burst + [0] * silence)
-    return ZeroInput(max(abs(v) for v in run.output[-(silence // 4) :]), run.overflows)
+    quarter = silence // 4
+    last, before = run.output[-quarter:], run.output[-2 * quarter : -quarter]
+    return ZeroInput(max(map(abs, last)), max(map(abs, before)), run.overflows)
 
 
 def quiet_noise(count: int, arithmetic: Arithmetic, seed: int = 1) -> FloatArray:

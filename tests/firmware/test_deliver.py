@@ -67,7 +67,7 @@ def test_float32_header_holds_the_twins() -> None:
 
 def test_the_terminal_lines_say_what_rounding_did() -> None:
     line = delivered("[firmware]\nnumber = { bits = 32 }\nsection_order = 'as_designed'\n").lines[0]
-    assert "32-bit words, 31 fraction bits, direct form I, shift 1: 1 fraction bits lost" in line
+    assert "32-bit words, 31 fraction bits, direct form I, shift 1 (fraction bits lost: 1)" in line
     assert "rounding moves the level by at most" in line
     assert "margin to the unit circle" in line
 

@@ -114,6 +114,14 @@ def test_limit_cycles_stay_within_jacksons_bound(r: float, theta: float, bound: 
     assert left.overflows[0] > 0
 
 
+def test_what_rests_what_falls_and_what_rings() -> None:
+    ringing, falling = words(round(-1.9 * 16384), round(0.96 * 16384)), words(-32736, 16353)
+    assert zero_input(ringing, Arithmetic(16, 12), silence=4_000).in_words.startswith("rings on at ")
+    assert zero_input(falling, Arithmetic(28, 12), silence=2_000).in_words.startswith("is still decaying, at ")
+    resting = words(0, 0)
+    assert zero_input(resting, Arithmetic(16, 12), silence=400).in_words == "comes to rest"
+
+
 def test_a_cascade_without_feedback_overflow_recovers() -> None:
     """Saturation: a burst at full scale into a 6 dB boost; the section saturates, then falls to rest or a few steps."""
     rounded = round_nearest(twin().sos, Number("fixed", 24, 22), "direct_form_1")
