@@ -93,14 +93,16 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
     from a2d.report.examples import examples
     from a2d.report.findings import findings
     from a2d.report.page import report_page
+    from a2d.report.spread_finding import spread_finding
 
-    notes = [*summary.notes(conversion), *control_notes(conversion)]
+    spread, why_not = spread_finding(conversion)
+    found = [*findings(conversion, delivery), *([spread] if spread else [])]
+    notes = [*summary.notes(conversion), *control_notes(conversion), *([why_not] if why_not else [])]
     try:
         recordings = examples(conversion)
     except AudioError as error:
         recordings, notes = (), [*notes, f"No sound to play: {error}"]
-    extras = Extras(findings(conversion, delivery), recordings, notes, delivery.warnings)
-    return report_page(conversion, source.sha256, extras)
+    return report_page(conversion, source.sha256, Extras(found, recordings, notes, delivery.warnings))
 
 
 def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, names: list[str]) -> None:

@@ -68,6 +68,7 @@ def report_page(conversion: Conversion, sha256: str, extras: Extras | None = Non
 def verdict(conversion: Conversion, findings: Sequence[Finding] = ()) -> Verdict:
     """What to say first: the twins' own limits, then whatever else was examined and failed."""
     lines = [f"{rate_label(j.twin.sample_rate_hz)}: {breach}" for j in conversion.judged for breach in j.breaches]
+    lines += [f"{rate_label(j.twin.sample_rate_hz)}: {remedy}" for j in conversion.judged for remedy in j.advice]
     failed = [finding.title for finding in findings if finding.passed is False]
     lines += [f"{plain(title)}: not within the limits, see there" for title in failed]
     if conversion.design.limits is None and not failed:

@@ -7,8 +7,9 @@ METHOD_SOURCES: dict[str, str] = {
     "3rd ed., section 7.2.2. Exact at one frequency a section; everything above it is squeezed below half the rate.",
     "magnitude_matched": "Poles mapped by e^(s/fs), zeros from the squared magnitude: M. Vicanek, Matched Second Order "
     "Digital Filters (2016), carried over to any numerator in docs/fidelity.md.",
-    "minimax": "Least worst magnitude error over the band, found by iteration: docs/fidelity.md.",
-    "auto": "The cheapest of the methods that keeps the stated limits: docs/fidelity.md.",
+    "minimax": "Least worst error in dB over the band, with a proved lower bound: rational Chebyshev approximation of "
+    "the squared magnitude, docs/fidelity.md with its sources.",
+    "auto": "The simplest of the methods that keeps the stated limits: docs/fidelity.md.",
 }
 
 OTHER_SOURCES: tuple[str, ...] = (

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 
+import msgspec
 import numpy as np
 import pytest
 import soundfile
@@ -12,8 +13,10 @@ from scipy import signal
 from a2d.commands.delivery import delivery_of
 from a2d.conversion import convert
 from a2d.design.read import parse_design
+from a2d.design.spread import Spread
 from a2d.report.examples import LEVEL_DBFS, SECONDS, examples
 from a2d.report.findings import control, headroom, rounding
+from a2d.report.spread_finding import spread_finding
 from a2d.report.text import error_text
 from tests.report.test_report_page import DESIGN, LIMITS, conversion
 
@@ -94,3 +97,40 @@ def test_controls_state_the_worst_position() -> None:
     largest = max(worst, key=lambda w: abs(w.worst))
     assert table.rows[0][1] == error_text(largest.worst, "dB", largest.at_hz)
     assert table.rows[0][4] == "5 of 5 positions over"
+
+
+NETWORK = """
+[design]
+name = "jetty"
+sample_rates = ["48 kHz"]
+[[section]]
+name = "rc"
+[section.network]
+input = "in"
+output = "out"
+[section.network.parts]
+R1 = { resistor = "10k", nodes = ["in", "out"], tolerance = "1 %" }
+C1 = { capacitor = "3n3", nodes = ["out", "gnd"], tolerance = "5 %" }
+"""
+
+
+def test_spread_of_an_rc_by_hand() -> None:
+    found, reason = spread_finding(convert(parse_design(NETWORK)))
+    assert found is not None
+    assert reason == ""
+    # R and C move the corner alike: d|H|/dB for +1 % is -20·lg|(1 + j·1.01·x)/(1 + jx)|, largest at the band's end.
+    x = 2.0 * np.pi * 20_000.0 * 10e3 * 3.3e-9
+    per_percent = -20.0 * np.log10(np.abs((1.0 + 1.01j * x) / (1.0 + 1j * x)))
+    assert [row[0] for row in found.rows] == ["rc.C1", "rc.R1"]
+    for row in found.rows:
+        value, _, place = row[2].partition(" at ")
+        assert level(value) == pytest.approx(per_percent, rel=0.01)  # a derivative against a step of 1 %
+        assert place == "20 kHz"
+    assert "1000 units" in found.text
+
+
+def test_no_tolerances_no_spread() -> None:
+    plain = parse_design(NETWORK.replace(', tolerance = "1 %"', "").replace(', tolerance = "5 %"', ""))
+    assert spread_finding(convert(plain)) == (None, "")
+    asked = msgspec.structs.replace(plain, spread=Spread())
+    assert spread_finding(convert(asked))[1].startswith("No spread: no part varies")
