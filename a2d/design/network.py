@@ -25,7 +25,7 @@ from a2d.design.quantities import (
 from a2d.design.structs import DesignStruct, Unrecognised, nearest
 
 GROUND = "gnd"
-MOST_PARTS = 1000
+MOST_PARTS = 300
 _NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]*")
 TwoNodes: TypeAlias = tuple[str, str]
 ThreeNodes: TypeAlias = tuple[str, str, str]

@@ -28,6 +28,7 @@ _OFFSETS = (1.0, 1.37, 0.71, 1.93)  # a root on the border of two steps may be c
 # look like roots.
 _RANGES = sorted(itertools.product((-5, -7, -10, -17), (7, 10, 14)), key=lambda ends: ends[1] - ends[0])
 _WIDEST = (-10, 14)
+_LARGEST = 700.0  # exp of it is within the range of a double, 1.8e308
 _NONE = np.zeros(0, dtype=np.complex128)
 _SINGULAR = "the network's equations have no unique solution (look for parts that leave a voltage or current open)"
 
@@ -46,8 +47,9 @@ class ZeroPole:
         zeros, poles = s - self.zeros, s - self.poles
         size = min(len(self.zeros), len(self.poles))
         paired = np.prod(zeros[..., :size] / poles[..., :size], axis=-1)
-        rest = np.prod(zeros[..., size:], axis=-1) / np.prod(poles[..., size:], axis=-1)
-        return np.asarray(self.gain * paired * rest)
+        with np.errstate(divide="ignore"):  # a zero that is met: its logarithm is -inf, and exp(-inf) = 0
+            rest = np.log(zeros[..., size:]).sum(axis=-1) - np.log(poles[..., size:]).sum(axis=-1)
+            return np.asarray(np.sign(self.gain) * paired * np.exp(np.log(np.abs(self.gain)) + rest))
 
 
 def zero_pole(pencil: Pencil) -> ZeroPole:
@@ -160,8 +162,11 @@ def _with_gain(
     def log_product(roots: ComplexArray) -> ComplexArray:
         return np.asarray(np.log(1.0 - roots / shifts[:, np.newaxis]).sum(axis=-1))
 
-    gains = h * np.exp(log_product(poles) - log_product(zeros) - order).real
-    gain = float(np.median(gains[near])) if near.any() else float(np.median(gains))
+    exponent = np.log(h.astype(np.complex128)) + log_product(poles) - log_product(zeros) - order
+    exponent = exponent[near] if near.any() else exponent
+    if np.median(exponent.real) > _LARGEST:
+        raise NetworkError(f"the network's order, {of_poles.total}, is too high for its frequencies (split it in two)")
+    gain = float(np.median(np.exp(exponent).real))
     return ZeroPole(_at_zero(zeros, of_zeros), _at_zero(poles, of_poles), gain)
 
 

@@ -15,7 +15,7 @@ from a2d.analog.network.roots import ZeroPole
 from a2d.analog.response import section_response
 from a2d.arrays import ComplexArray, FloatArray
 
-_SAME = 1e-9  # relative distance below which a pole and a zero cancel: their rounding error with room to spare
+_SAME = 1e-9  # of a pole's distance from the axis: a zero closer to it than this changes no response by more
 _REAL = 2e-8  # of |root|: an imaginary part below this is a double root's rounding error
 _APART = 100.0  # real poles further apart than this make two sections, each matched at its own frequency
 _GRID_HZ = np.geomspace(0.1, 1e6, 71)
@@ -29,7 +29,7 @@ def cancelled(roots: ZeroPole) -> tuple[ZeroPole, ComplexArray]:
     for zero in _parted(roots.zeros):
         distance = np.abs(np.array(poles) - zero)
         nearest = int(np.argmin(distance)) if poles else 0
-        if poles and distance[nearest] <= _SAME * abs(zero):
+        if poles and distance[nearest] <= _SAME * abs(poles[nearest].real):
             gone.append(poles.pop(nearest))
         else:
             zeros.append(zero)

@@ -239,6 +239,29 @@ def test_pairs_that_cancel_are_removed_and_mentioned():
     assert solution.notes == ("a pole and a zero cancel at 159.15 Hz",)
 
 
+@pytest.mark.parametrize("order", [30, 50])
+def test_a_long_rc_ladder(order):
+    """At 0 Hz it lets everything pass; its poles are those of a chain, all real (order 50: H's constant is 1e300)."""
+    parts, node = {}, "in"
+    for i in range(order):
+        parts |= {f"R{i}": r(1e3, node, f"n{i}"), f"C{i}": c(1e-9, f"n{i}", "gnd")}
+        node = f"n{i}"
+    solution = solve_network(network(parts, end=node))
+    k = np.arange(1, order + 1)
+    expected = -4e6 * np.sin((2 * k - 1) * np.pi / (2 * (2 * order + 1))) ** 2
+    assert np.sort(solution.roots.poles.real) == pytest.approx(np.sort(expected), rel=1e-9)
+    assert chain_response(solution.b, solution.a, np.array([0.0])) == pytest.approx([1.0], rel=1e-9)
+
+
+def test_an_order_beyond_double_precision_is_refused():
+    parts, node = {}, "in"
+    for i in range(80):
+        parts |= {f"R{i}": r(1e3, node, f"n{i}"), f"C{i}": c(1e-9, f"n{i}", "gnd")}
+        node = f"n{i}"
+    with pytest.raises(NetworkError, match=r"order, 80, is too high for its frequencies"):
+        solve_network(network(parts, end=node))
+
+
 def test_a_double_zero_of_which_one_meets_a_pole():
     """Two equal branches to ground: rounding makes the double zero a complex pair, and half of it cancels."""
     parts = {f"R{i}": r(50.0, "in", f"m{i}") for i in range(2)} | {f"C{i}": c(5e-10, f"m{i}", "gnd") for i in range(2)}
