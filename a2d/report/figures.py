@@ -9,7 +9,6 @@ from markupsafe import Markup
 
 from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion
-from a2d.report.graphics import settle
 from a2d.report.inline import inline_svg
 from a2d.report.plots import PLOTS
 from a2d.report.style import PAGE_SHEET, PHONE_SHEET, drawing
@@ -42,7 +41,6 @@ def _figure(key: str, curves: Traces, comparisons: Sequence[Comparison]) -> Page
     for size, sheet in (("wide", PAGE_SHEET), ("narrow", PHONE_SHEET)):
         with drawing(sheet.text, svg_text=True):
             figure = plot.draw(curves, comparisons, sheet)
-            settle(figure)
             drawn[size] = inline_svg(figure, f"{key}-{size}", plot.caption, description)
     return PageFigure(key, plot.caption, description, drawn["wide"], drawn["narrow"])
 

@@ -9,6 +9,7 @@ from contextlib import contextmanager
 
 import numpy as np
 from matplotlib.figure import Figure
+from matplotlib.layout_engine import PlaceHolderLayoutEngine
 from matplotlib.transforms import Bbox
 
 from a2d.report.style import DOTS_PER_INCH
@@ -21,10 +22,11 @@ def settle(figure: Figure) -> None:
     figure, so that the same figure gives the same bytes.
     """
     engine = figure.get_layout_engine()
-    if engine is not None:
-        with _boxes_for_missing_letters():
-            for _ in range(2):  # the first round changes the panels' sizes, and so how many ticks they have
-                engine.execute(figure)
+    if engine is None or isinstance(engine, PlaceHolderLayoutEngine):
+        return
+    with _boxes_for_missing_letters():
+        for _ in range(2):  # the first round changes the panels' sizes, and so how many ticks they have
+            engine.execute(figure)
     figure.set_layout_engine("none")
     for axes in figure.axes:
         axes.set_position(Bbox.from_bounds(*np.round(axes.get_position(original=True).bounds, 4)))
@@ -34,7 +36,8 @@ def settle(figure: Figure) -> None:
 
 
 def svg(figure: Figure) -> bytes:
-    """The settled figure as SVG."""
+    """The figure as SVG."""
+    settle(figure)
     buffer = io.BytesIO()
     with _boxes_for_missing_letters():
         figure.savefig(buffer, format="svg", metadata={"Date": None, "Creator": None})
@@ -42,7 +45,8 @@ def svg(figure: Figure) -> bytes:
 
 
 def png(figure: Figure) -> bytes:
-    """The settled figure as PNG at 150 dots an inch."""
+    """The figure as PNG at 150 dots an inch."""
+    settle(figure)
     buffer = io.BytesIO()
     with _boxes_for_missing_letters():
         figure.savefig(buffer, format="png", dpi=DOTS_PER_INCH, metadata={"Software": None})

@@ -22,11 +22,12 @@ from a2d.report.transfer import transfers
 
 @dataclass(frozen=True)
 class Verdict:
-    """The first thing on the page: `good`, `bad` or `open` (no limits stated), one sentence, and what is broken."""
+    """The first thing on the page: `good`, `bad` or `open` (no limits), a sentence, what is broken, what would help."""
 
     state: str
     sentence: str
     lines: tuple[str, ...] = ()
+    advice: tuple[str, ...] = ()
 
 
 def report_page(conversion: Conversion, sha256: str, extras: Extras | None = None) -> bytes:
@@ -68,7 +69,7 @@ def report_page(conversion: Conversion, sha256: str, extras: Extras | None = Non
 def verdict(conversion: Conversion, findings: Sequence[Finding] = ()) -> Verdict:
     """What to say first: the twins' own limits, then whatever else was examined and failed."""
     lines = [f"{rate_label(j.twin.sample_rate_hz)}: {breach}" for j in conversion.judged for breach in j.breaches]
-    lines += [f"{rate_label(j.twin.sample_rate_hz)}: {remedy}" for j in conversion.judged for remedy in j.advice]
+    advice = [f"{rate_label(j.twin.sample_rate_hz)}: {remedy}" for j in conversion.judged for remedy in j.advice]
     failed = [finding.title for finding in findings if finding.passed is False]
     lines += [f"{plain(title)}: not within the limits, see there" for title in failed]
     if conversion.design.limits is None and not failed:
@@ -77,7 +78,7 @@ def verdict(conversion: Conversion, findings: Sequence[Finding] = ()) -> Verdict
         return Verdict("good", "Within the stated limits at every sample rate.")
     rates = [rate_label(j.twin.sample_rate_hz) for j in conversion.judged if j.breaches]
     sentence = f"Over the stated limits at {listed(rates)}." if rates else "A further check failed."
-    return Verdict("bad", sentence, tuple(lines))
+    return Verdict("bad", sentence, tuple(lines), tuple(advice))
 
 
 @dataclass(frozen=True)

@@ -12,7 +12,7 @@ from a2d.analog.chain import AnalogChain
 from a2d.compare.errors import Comparison
 from a2d.digital.twin import Twin
 from a2d.report.curve_plots import draw_error, draw_group_delay, draw_magnitude, draw_phase
-from a2d.report.graphics import FORMATS, settle
+from a2d.report.graphics import FORMATS
 from a2d.report.root_plot import draw_roots
 from a2d.report.style import FILE_SHEET, Sheet, drawing
 from a2d.report.text import plain
@@ -65,7 +65,6 @@ def plots(
                 f"{plain(title)} · {plot.caption.lower()}", TITLE_WIDTH, max_lines=3, placeholder=" …"
             )
             figure.suptitle("\n".join(lines), x=0.01, ha="left", weight="bold")
-            settle(figure)
             for extension, write in FORMATS.items():
                 files[f"{name}.{key}.{extension}"] = write(figure)
     return files

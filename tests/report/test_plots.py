@@ -15,7 +15,7 @@ import pytest
 
 from a2d.compare.errors import compare
 from a2d.digital.twin import make_twin
-from a2d.report.graphics import settle, svg
+from a2d.report.graphics import svg
 from a2d.report.plots import PLOTS, plots
 from a2d.report.root_plot import draw_roots
 from a2d.report.style import PHONE_SHEET, drawing
@@ -105,9 +105,7 @@ def test_layout_does_not_tremble() -> None:
     curves, seen = traces(chain, twins, [(20.0, 20_000.0)] * 2), set()
     for _ in range(8):
         with drawing(PHONE_SHEET.text, svg_text=True):
-            figure = draw_roots(curves, [], PHONE_SHEET)
-            settle(figure)
-            seen.add(svg(figure))
+            seen.add(svg(draw_roots(curves, [], PHONE_SHEET)))
     assert len(seen) == 1
 
 
