@@ -145,11 +145,14 @@ def _general(b: FloatArray, a: FloatArray, rate: FloatArray, match: FloatArray) 
         above_half_rate(a, rate),
         "magnitude_matched cannot map a resonance at or above half the sample rate; minimax fits the band below it",
     )
+    lead = np.where(b[..., 0] != 0.0, b[..., 0], np.where(b[..., 1] != 0.0, b[..., 1], b[..., 2]))
     at = _target(b, a, rate, match)
     product = (at.value - at.low**2 - at.slope * at.p) / (4.0 * at.p**2)
-    high = _root(at.slope + at.low**2 - 4.0 * (1.0 - 2.0 * at.p) * product) * np.where(b[..., 0] < 0.0, -1.0, 1.0)
+    high = _root(at.slope + at.low**2 - 4.0 * (1.0 - 2.0 * at.p) * product) * np.where(
+        lead * a[..., 0] < 0.0, -1.0, 1.0
+    )
     middle = 0.5 * (at.low + high)
-    outward = np.where(b[..., 1] < 0.0, -1.0, 1.0) * np.where(middle < 0.0, -1.0, 1.0)
+    outward = np.where(b[..., 1] * lead < 0.0, -1.0, 1.0) * np.where(middle < 0.0, -1.0, 1.0)
     first = 0.5 * (middle + outward * _root(middle**2 + product))
     return np.stack([first, 0.5 * (at.low - high), middle - first], axis=-1), _poles(a, rate)
 

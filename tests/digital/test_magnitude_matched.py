@@ -128,6 +128,15 @@ def test_zeros_stay_on_the_side_where_the_analog_zeros_are():
     assert zeros[1] == pytest.approx(np.exp(1000.0 / RATE), rel=1e-4)
 
 
+@pytest.mark.parametrize("kind", ["peaking", "highshelf", "notch", "bandpass", "lowpass", "highpass"])
+@pytest.mark.parametrize("gain_db", [9.0, -9.0])
+def test_an_inverting_section_is_the_other_times_minus_one(kind, gain_db):
+    b, a = prototypes.section(kind, 3000.0, 0.8, gain_db)
+    plain, inverted = convert(b, a, 3000.0), convert(-b, a, 3000.0)
+    assert inverted[:3] == pytest.approx(-plain[:3], rel=1e-12, abs=1e-15)
+    assert inverted[3:] == pytest.approx(plain[3:], rel=1e-12)
+
+
 def test_a_resonance_above_half_the_rate_is_refused_by_name():
     b, a = prototypes.section("peaking", 30_000.0, 4.0, 6.0)
     chain = AnalogChain.of(["air"], b=[b], a=[a])
