@@ -69,20 +69,31 @@ def certify(
     f_hz = _clear_of_zeros(_finer(frequencies(every)), shape)
     in_phase = shape.allpass
     error = _errors(sos, b, a, rate, f_hz, in_phase)
-    needed = _needed(sos, shape, rate)
-    return tuple(_one(error[s], f_hz[s], bool(in_phase[s]), int(needed[s])) for s in range(len(b)))
+    needed, silent = _needed(sos, shape, rate), _silent_at_half_rate(sos, shape, rate)
+    return tuple(_one(error[s], f_hz[s], bool(in_phase[s]), int(needed[s]), bool(silent[s])) for s in range(len(b)))
 
 
-def _one(error: FloatArray, f_hz: FloatArray, in_phase: bool, needed: int) -> Certificate:
-    seen = alternation(error[np.newaxis], needed)
+def _one(error: FloatArray, f_hz: FloatArray, in_phase: bool, needed: int, silent: bool) -> Certificate:
     worst = int(np.argmax(np.abs(error)))
-    value = _summit(error, worst)
-    unit = "deg" if in_phase else "dB"
+    count, bound = _proof(error, needed, silent)
     band = (float(f_hz[0]), float(f_hz[-1]))
+    quantity, unit = ("phase", "deg") if in_phase else ("magnitude", "dB")
+    return Certificate(quantity, unit, band, _summit(error, worst), float(f_hz[worst]), count, needed, bound)
+
+
+def _proof(error: FloatArray, needed: int, silent: bool) -> tuple[int, float]:
+    """Alternations and the bound that they give.
+
+    A twin with a zero at z = -1 can nowhere be lower than there, so half the rate counts as an extremum with the sign
+    of too little: with one alternation less, the last of them of too much, no other ratio does better either.
+    """
+    seen = alternation(error[np.newaxis], needed)
     count, bound = int(seen.extrema[0]), float(seen.bound[0])
-    return Certificate(
-        "phase" if in_phase else "magnitude", unit, band, value, float(f_hz[worst]), count, needed, bound
-    )
+    if bound == 0.0 and silent:
+        seen = alternation(error[np.newaxis], needed - 1)
+        if seen.bound[0] > 0.0 and error[seen.points[0, -1]] > 0.0:
+            return int(seen.extrema[0]) + 1, float(seen.bound[0])
+    return count, bound
 
 
 def _summit(error: FloatArray, at: int) -> float:
@@ -123,6 +134,13 @@ def _needed(sos: FloatArray, shape: Shape, rate: FloatArray) -> FloatArray:
     poles = np.where(shape.second_order, 2, np.where(shape.first_order, 1, 0))
     zeros = np.where(_keeps_zeros(sos, shape, rate), free_zeros(shape, rate), poles)
     return np.asarray(np.where(shape.allpass, poles + 1, zeros + poles + 2))
+
+
+def _silent_at_half_rate(sos: FloatArray, shape: Shape, rate: FloatArray) -> BoolArray:
+    """Whether the twin has a zero at z = -1 that it was free to put elsewhere, shape [S]."""
+    d = np.where(shape.second_order[:, np.newaxis], sos[:, :3], sos[:, :3] * np.array([1.0, 1.0, 0.0]))
+    there = np.abs(d[:, 0] - d[:, 1] + d[:, 2]) <= 4.0 * np.finfo(float).eps * np.abs(d).sum(axis=1)
+    return np.asarray(there & (free_zeros(shape, rate) > 0) & ~shape.allpass)
 
 
 def _keeps_zeros(sos: FloatArray, shape: Shape, rate: FloatArray) -> BoolArray:

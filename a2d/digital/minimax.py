@@ -194,12 +194,29 @@ def _levelled_start(problem: Problem, roots: ComplexArray, split: FloatArray) ->
 
 
 def _between(setting: Setting, problem: Problem, f_hz: FloatArray, best: Exchanged) -> Exchanged:
-    """Some more exchange with points between those of the grid, about the extrema."""
+    """Some more exchange with points between those of the grid, about the extrema.
+
+    A section whose best has a zero at z = -1 stays there: its problem has a zero less.
+    """
+    on_edge = best.b[:, 2 - setting.zeros] == 0.0 if setting.zeros else np.zeros(len(f_hz), dtype=np.bool_)
+    done = Exchanged(*(np.empty_like(part) for part in best))
+    for rows, zeros in ((~on_edge, setting.zeros), (on_edge, setting.zeros - 1)):
+        if np.any(rows):
+            part = Exchanged(*(values[rows] for values in best))
+            shorter = replace(problem.rows(rows), zeros=zeros)
+            finer = problem_of(setting.rows(rows), _finer(shorter, f_hz[rows], part))
+            found = exchange(replace(finer, zeros=zeros), part.b, part.a, LAST_ROUNDS, close=1e-6)
+            for whole, values in zip(done, found, strict=True):
+                whole[rows] = values
+    return done
+
+
+def _finer(problem: Problem, f_hz: FloatArray, best: Exchanged) -> FloatArray:
+    """The grid in Hz with points added on both sides of each extremum."""
     points = alternation(problem.error(best.b, best.a), problem.references).points
     last = f_hz.shape[1] - 1
     part = np.linspace(0.0, 1.0, BETWEEN + 1)[:-1]
     centre = np.take_along_axis(f_hz, points, axis=1)[..., np.newaxis]
     sides = [np.take_along_axis(f_hz, np.clip(points + side, 0, last), axis=1)[..., np.newaxis] for side in (-1, 1)]
     extra = [(centre + part * (side - centre)).reshape(len(f_hz), -1) for side in sides]
-    finer = problem_of(setting, np.sort(np.concatenate([f_hz, *extra], axis=1), axis=1))
-    return exchange(finer, best.b, best.a, LAST_ROUNDS, close=1e-6)
+    return np.sort(np.concatenate([f_hz, *extra], axis=1), axis=1)

@@ -185,3 +185,14 @@ def test_a_twin_from_sos_can_be_fitted_further():
     chain = chain_of(DESK[0])
     twin = Twin.from_sos(make_twin(chain, RATE).sos, RATE)
     assert certify(twin.sos, chain.b, chain.a, RATE, BAND)[0].needed == 6
+
+
+@pytest.mark.parametrize(("f0", "q"), [(9000.0, 0.35), (12_000.0, 0.48), (15_000.0, 0.5)])
+def test_a_zero_at_half_the_rate_counts_as_an_alternation(f0, q):
+    """These low-passes are best with a zero at z = -1; a linear programme with N ≥ 0 finds nothing below the bound."""
+    chain = chain_of(("lowpass", f0, q))
+    twin = make_twin(chain, RATE, method="minimax")
+    [proof] = certify(twin.sos, chain.b, chain.a, RATE, BAND)
+    assert abs(twin.sos[0, 0] - twin.sos[0, 1] + twin.sos[0, 2]) < 1e-15
+    assert proof.alternations >= proof.needed == 6
+    assert proof.gap < 0.02
