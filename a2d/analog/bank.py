@@ -7,13 +7,14 @@ first-order equations instead, two a section, found as a network's are; the pole
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import NamedTuple
 
 import numpy as np
 
 from a2d.analog.network.degree import pole_degree
 from a2d.analog.network.pencil import Pencil
 from a2d.analog.network.roots import ZeroPole, zero_pole
-from a2d.analog.network.sections import cancelled, second_order_sections
+from a2d.analog.network.sections import cancellations, cancelled, second_order_sections
 from a2d.analog.network.solve import CHECK_FLOOR, CHECK_HZ
 from a2d.analog.response import chain_response
 from a2d.analog.sections import Sections
@@ -55,15 +56,23 @@ class Bank:
         return np.asarray(self.mix[:, np.newaxis] * np.array(each))
 
 
-def cascade_of(bank: Bank) -> tuple[FloatArray, FloatArray]:
-    """The bank as second-order sections in cascade: b, a [S, 3].
+class Cascade(NamedTuple):
+    """A bank's sum as second-order sections b, a [S, 3], and what cancelled on the way."""
+
+    b: FloatArray
+    a: FloatArray
+    notes: tuple[str, ...]
+
+
+def cascade_of(bank: Bank) -> Cascade:
+    """The bank as second-order sections in cascade.
 
     Raises
     ------
     NetworkError
         The sum is zero or rises without end, or the cascade does not agree with it from 0.1 Hz to 1 MHz to 1e-9.
     """
-    roots, _ = cancelled(sum_roots(bank))
+    roots, gone = cancelled(sum_roots(bank))
     b, a = second_order_sections(roots)
     terms = np.abs(bank.terms(CHECK_HZ)).max(axis=0)
     error = np.abs(chain_response(b, a, CHECK_HZ) - bank.response(CHECK_HZ))
@@ -74,7 +83,7 @@ def cascade_of(bank: Bank) -> tuple[FloatArray, FloatArray]:
             f"the cascade does not agree with the sum of the bands at {CHECK_HZ[worst]:.4g} Hz "
             f"({error[worst] / scale[worst]:.1e} relative, allowed {SUM_RELATIVE:g})"
         )
-    return b, a
+    return Cascade(b, a, cancellations(gone))
 
 
 def sum_roots(bank: Bank) -> ZeroPole:

@@ -15,7 +15,7 @@ from a2d.analog.sections import Sections, natural_frequency_hz, scaled
 from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
 from a2d.design.model import Design
 from a2d.design.section import Section
-from a2d.errors import A2dError, DesignError, Fault
+from a2d.errors import A2dError, DesignError, Fault, NetworkError
 
 
 def build_chain(design: Design, ready: Mapping[int, Sections] | None = None) -> AnalogChain:
@@ -61,14 +61,21 @@ def build_section(section: Section) -> Sections:
 
 def bank_of(section: BankSection) -> Bank:
     """The bands of a bank with their weights, the section's factor not included."""
-    bands = tuple(build_section(band) for band in section.band)
+    bands = tuple(_band(band) for band in section.band)
     mix = np.array([band.mix for band in section.band], dtype=np.float64)
     return Bank(tuple(band.name for band in section.band), bands, mix, float(section.direct))
 
 
+def _band(band: Section) -> Sections:
+    try:
+        return build_section(band)
+    except A2dError as error:
+        raise NetworkError(f'band "{band.name}": {error}') from error
+
+
 def bank_sections(section: BankSection) -> Sections:
     """The sum of a bank's bands as a cascade."""
-    b, a = cascade_of(bank_of(section))
+    b, a, _ = cascade_of(bank_of(section))
     return Sections(b, a, natural_frequency_hz(b, a))
 
 

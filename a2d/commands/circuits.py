@@ -5,6 +5,8 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Sequence
 
+from a2d.analog.bank import cascade_of
+from a2d.analog.build import bank_of
 from a2d.analog.hardware import network_of
 from a2d.analog.insight import Change, Figures, changes, figures
 from a2d.analog.network.solve import solve_network
@@ -22,6 +24,8 @@ def circuit_notes(conversion: Conversion) -> list[str]:
         network = network_of(entry)
         lines += [f"{name}: {note}" for note in solve_network(network).notes]
         lines += [f"{name}: {_change(change)}" for change in changes(network, band)]
+    banks = [section for section in conversion.design.sections if isinstance(section, BankSection)]
+    lines += [f"{bank.name}: {note}" for bank in banks for note in cascade_of(bank_of(bank)).notes]
     return lines + _moved(conversion)
 
 

@@ -44,7 +44,7 @@ MIXES = {
 @pytest.mark.parametrize("q", [0.7, 1.4, 4.3])
 def test_cascade_is_the_direct_sum(name, q):
     mix, direct = MIXES[name]
-    b, a = cascade_of(bank(mix, direct, q))
+    b, a, _ = cascade_of(bank(mix, direct, q))
     expected = direct_sum(OCTAVES, q, mix, direct)
     scale = np.maximum(np.abs(expected), 1e-3)  # where the bands nearly cancel: of the larger terms
     assert np.max(np.abs(chain_response(b, a, F) - expected) / scale) < 1e-9
@@ -59,7 +59,7 @@ def test_bank_response_is_the_direct_sum():
 def test_asymptotes_and_phase_of_an_inverting_band():
     """Slopes of 20 dB a decade that cross at H0/Q; phase -90, -180, -270 (any textbook's band-pass)."""
     q, h0, f0 = 5.0, 4.0, 1000.0
-    b, a = cascade_of(bank([-h0], 0.0, q, [f0]))
+    b, a, _ = cascade_of(bank([-h0], 0.0, q, [f0]))
     f = np.array([f0 / 1e4, f0 / 1e3, f0, f0 * 1e3, f0 * 1e4])
     h = chain_response(b, a, f)
     level = 20 * np.log10(np.abs(h))
@@ -76,7 +76,7 @@ def test_asymptotes_and_phase_of_an_inverting_band():
 
 def test_equal_bands_fall_together():
     """Two bands alike are one with twice the weight: a pole pair of the sum has a zero pair upon it."""
-    b, a = cascade_of(bank([1.0, 1.0], 0.0, 1.4, [500.0, 500.0]))
+    b, a, _ = cascade_of(bank([1.0, 1.0], 0.0, 1.4, [500.0, 500.0]))
     assert len(b) == 1
     assert chain_response(b, a, F) == pytest.approx(direct_sum(np.array([500.0]), 1.4, np.array([2.0]), 0.0), rel=1e-9)
 
@@ -120,6 +120,22 @@ def test_a_circuit_with_a_part_too_many_is_told_the_right_ones():
     with pytest.raises(DesignError, match=r'there is no "C2" here \(allowed: R1, C1\)') as caught:
         parse_design(text)
     assert "C1 is missing" in str(caught.value)
+
+
+def test_a_band_without_weight_is_told_of():
+    solution = cascade_of(bank([1.0, 0.0], 1.0, 1.4, [100.0, 1000.0]))
+    assert len(solution.b) == 1
+    assert solution.notes == ("a pole and a zero cancel at 1000 Hz (a pair)",)
+
+
+def test_a_fault_in_a_band_names_it():
+    text = (
+        HEAD + '[[section.band]]\nname = "b1"\n[section.band.network]\ninput = "in"\noutput = "out"\n'
+        '[section.band.network.parts]\nR1 = { resistor = "1k", nodes = ["in", "x"] }\n'
+        'R2 = { resistor = "1k", nodes = ["in", "out"] }\n'
+    )
+    with pytest.raises(DesignError, match=r'band "b1": node "x" has one connection only .* @ section "room"'):
+        build_chain(parse_design(text))
 
 
 def test_source_load_and_op_amps_of_a_ready_circuit():

@@ -36,6 +36,15 @@ def cancelled(roots: ZeroPole) -> tuple[ZeroPole, ComplexArray]:
     return replace(roots, poles=np.array(poles, dtype=complex), zeros=np.array(zeros, dtype=complex)), np.array(gone)
 
 
+def cancellations(gone: ComplexArray) -> tuple[str, ...]:
+    """What `cancelled` removed, in words."""
+    return tuple(
+        f"a pole and a zero cancel at {abs(pole) / (2.0 * np.pi):.5g} Hz{' (a pair)' if pole.imag else ''}"
+        for pole in gone
+        if pole.imag >= 0.0
+    )
+
+
 def _parted(roots: ComplexArray) -> ComplexArray:
     """The roots with every pair that is complex by rounding alone made a real double root, of the same product.
 

@@ -10,7 +10,7 @@ from a2d.analog.network.faults import faults
 from a2d.analog.network.parts import lay_out
 from a2d.analog.network.pencil import Pencil, direct_response
 from a2d.analog.network.roots import ZeroPole, zero_pole
-from a2d.analog.network.sections import cancelled, second_order_sections
+from a2d.analog.network.sections import cancellations, cancelled, second_order_sections
 from a2d.analog.network.stability import check_stability
 from a2d.analog.response import chain_response
 from a2d.arrays import ComplexArray, FloatArray
@@ -74,7 +74,7 @@ def solve_pencil(pencil: Pencil) -> Solution:
     """H(s) of one pencil as second-order sections, checked against the pencil (see `solve_network`)."""
     roots, gone = cancelled(zero_pole(pencil))
     _check_proper(roots)
-    solution = Solution(*second_order_sections(roots), roots, _notes(gone))
+    solution = Solution(*second_order_sections(roots), roots, cancellations(gone))
     _check_agreement(solution, direct_response(pencil, CHECK_HZ))
     return solution
 
@@ -102,11 +102,3 @@ def _check_agreement(solution: Solution, direct: ComplexArray) -> None:
             f"the sections do not agree with the network at {CHECK_HZ[worst]:.4g} Hz "
             f"({error[worst] / abs(direct[worst]):.1e} relative, allowed {CHECK_RELATIVE:g}; values far out of range?)"
         )
-
-
-def _notes(gone: ComplexArray) -> tuple[str, ...]:
-    return tuple(
-        f"a pole and a zero cancel at {abs(pole) / (2.0 * np.pi):.5g} Hz{' (a pair)' if pole.imag else ''}"
-        for pole in gone
-        if pole.imag >= 0.0
-    )
