@@ -103,7 +103,8 @@ def _try(chain: AnalogChain, rate: float, limits: Limits, attempt: Attempt, chan
 
 def twin_of(chain: AnalogChain, rate: float, limits: Limits | None, attempt: Attempt) -> Twin:
     """The twin of an attempt."""
-    needs_limits = "auto" in attempt.methods or attempt.scope != "section"
+    uneven = limits is not None and (limits.mask is not None or bool(limits.table))
+    needs_limits = "auto" in attempt.methods or attempt.scope != "section" or uneven
     return make_twin(
         chain,
         rate,

@@ -46,6 +46,8 @@ class Allowed:
     def weight(self) -> FloatArray:
         """Factors on the magnitude error that make every limit `tightest_db`, with their frequencies: shape [2, G]."""
         nearest = np.minimum(self.upper_db, -self.lower_db)
+        if not np.any(np.isfinite(nearest) & (nearest > 0.0)):
+            return np.stack([self.f_hz, np.ones_like(self.f_hz)])
         with np.errstate(divide="ignore", invalid="ignore"):
             factor = np.where(np.isfinite(nearest) & (nearest > 0.0), self.tightest_db / nearest, LEAST_WEIGHT)
         return np.stack([self.f_hz, np.clip(factor, LEAST_WEIGHT, 1.0)])

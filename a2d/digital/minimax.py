@@ -78,6 +78,22 @@ def minimax(
     extrema that its own poles suggest and finished by Remez' exchange: docs/fidelity.md.
     """
     del match_hz
+    return weighted_minimax(b, a, sample_rate_hz, band_hz, None)
+
+
+def weighted_minimax(
+    b: FloatArray, a: FloatArray, sample_rate_hz: FloatArray, band_hz: FloatArray, weight: FloatArray | None
+) -> FloatArray:
+    """`minimax` of an error that counts more at some frequencies than at others.
+
+    Parameters
+    ----------
+    b, a, sample_rate_hz, band_hz
+        As for `minimax`.
+    weight
+        Shape [2, W]: frequencies in Hz, rising, and factors above zero on the error in dB, between which it runs
+        straight; None for 1 everywhere. All-pass sections are fitted without it.
+    """
     lead = np.broadcast_shapes(b.shape[:-1], sample_rate_hz.shape, band_hz.shape[:-1])
     shape = shape_of(*(np.broadcast_to(c, (*lead, 3)).reshape(-1, 3) for c in (b, a)))
     rate = np.broadcast_to(sample_rate_hz, lead).ravel()
@@ -93,14 +109,16 @@ def minimax(
     )
     same = np.flatnonzero(shape.own_poles_only)
     sos[same] = own_poles(Shape(shape.b[same], shape.a[same]), rate[same])
-    for setting, rows in _settings(shape, rate, band):
+    for setting, rows in _settings(shape, rate, band, weight):
         best = solve(setting)
         first_order = np.full(len(best.b), setting.poles == 1)
         sos[rows] = warped.to_sos(whole_numerator(setting, best.b), best.a, first_order)
     return sos.reshape(*lead, 6)
 
 
-def _settings(shape: Shape, rate: FloatArray, band: FloatArray) -> list[tuple[Setting, BoolArray]]:
+def _settings(
+    shape: Shape, rate: FloatArray, band: FloatArray, weight: FloatArray | None
+) -> list[tuple[Setting, BoolArray]]:
     """The sections that are to be approximated, those of one shape together, and which they are."""
     zeros, poles = free_zeros(shape, rate), np.where(shape.second_order, 2, 1)
     wanted = ~(shape.gain | shape.allpass | shape.own_poles_only)
@@ -108,7 +126,8 @@ def _settings(shape: Shape, rate: FloatArray, band: FloatArray) -> list[tuple[Se
     for free in FREE:
         rows = np.asarray(wanted & (zeros == free[0]) & (poles == free[1]))
         if np.any(rows):
-            found.append((Setting(Shape(shape.b[rows], shape.a[rows]), rate[rows], band[rows], *free), rows))
+            part = Shape(shape.b[rows], shape.a[rows])
+            found.append((Setting(part, rate[rows], band[rows], *free, weight), rows))
     return found
 
 

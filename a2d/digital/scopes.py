@@ -12,6 +12,7 @@ from a2d.digital.allowed import Allowed
 from a2d.digital.chain_fit import ChainFit, fit_chain
 from a2d.digital.choose import AUTO, choose
 from a2d.digital.methods import METHODS
+from a2d.digital.minimax import weighted_minimax
 from a2d.digital.reduce import fewest_sections
 from a2d.digital.refusal import SectionRefused
 from a2d.errors import ConversionError, ParameterError
@@ -65,16 +66,24 @@ def _by_method(order: Order, name: str, rows: IntArray) -> FloatArray:
     """The sections `rows` by one method, those of a fit whose phase counts one by one."""
     b, a = order.b[rows], order.a[rows]
     try:
-        if name == FITTED and order.weight_phase:
-            fits = [
-                fit_chain(b[[i]], a[[i]], order.rate, order.band_hz, weight_phase=order.weight_phase)
-                for i in range(len(rows))
-            ]
-            return np.concatenate([fit.sos for fit in fits])
+        if name == FITTED:
+            return _fitted_alone(order, b, a)
         return METHODS[name](b, a, np.asarray(order.rate), order.match_hz[rows], order.band_hz)
     except SectionRefused as error:
         refused = ", ".join(f'"{order.names[rows[r]]}"' for r in error.rows)
         raise ConversionError(f"{error.reason} (section {refused} at {order.rate:g} Hz)") from error
+
+
+def _fitted_alone(order: Order, b: FloatArray, a: FloatArray) -> FloatArray:
+    """Minimax fits, weighed by the room that the limits leave; one by one where the phase counts."""
+    weight = None if order.allowed is None else order.allowed.weight
+    if not order.weight_phase:
+        return weighted_minimax(b, a, np.asarray(order.rate), order.band_hz, weight)
+    fits = [
+        fit_chain(b[[i]], a[[i]], order.rate, order.band_hz, weight_phase=order.weight_phase, weight=weight)
+        for i in range(len(b))
+    ]
+    return np.concatenate([fit.sos for fit in fits])
 
 
 def whole_chain(order: Order) -> Made:

@@ -7,7 +7,7 @@ from hypothesis import strategies as st
 
 from a2d.analog.chain import AnalogChain
 from a2d.digital.certificate import certify
-from a2d.digital.minimax import minimax
+from a2d.digital.minimax import minimax, weighted_minimax
 from a2d.digital.twin import make_twin
 from a2d.errors import ConversionError
 from tests.support import prototypes
@@ -141,6 +141,18 @@ def test_a_band_up_to_half_the_rate_is_refused_by_name():
     chain = AnalogChain.of(["body"], b=[b], a=[a])
     with pytest.raises(ConversionError, match=r'ends below half the sample rate \(section "body" at 40000 Hz\)'):
         make_twin(chain, 40_000.0, method="minimax", band_hz=(20.0, 20_000.0))
+
+
+def test_a_weighted_error_alternates_at_one_level():
+    """Ten times the weight below 2 kHz: the error there is a tenth of that above, and the weighted one alternates."""
+    analog = prototypes.section("peaking", 9000.0, 0.8, 9.0)
+    weight = np.array([[20.0, 2000.0, 4000.0, 20_000.0], [10.0, 10.0, 1.0, 1.0]])
+    sos = weighted_minimax(*(np.asarray(c) for c in analog), np.asarray(48_000.0), np.asarray(BAND), weight)
+    error = error_db(sos, analog)
+    weighed = error * np.interp(F, *weight)
+    assert alternations(weighed, 0.995) >= 6
+    assert np.abs(error[F < 2000.0]).max() < 0.101 * np.abs(error).max()
+    assert np.abs(weighed).max() < np.abs(error_db(convert(*analog), analog) * np.interp(F, *weight)).max()
 
 
 @settings(max_examples=80, deadline=None)

@@ -28,6 +28,7 @@ class Setting:
     """N sections of one shape: `shape`, their `rate` [N] and `band` [N, 2] in Hz, and what of them is free.
 
     `zeros`, `poles` count the free roots; the zeros that stay where they are make the fixed factor of the numerator.
+    `weight` [2, W] holds frequencies in Hz, rising, and factors on the error between which it runs straight.
     """
 
     shape: Shape
@@ -35,6 +36,7 @@ class Setting:
     band: FloatArray
     zeros: int
     poles: int
+    weight: FloatArray | None = None
 
     @property
     def half_angle(self) -> FloatArray:
@@ -132,7 +134,8 @@ def problem_of(setting: Setting, f_hz: FloatArray) -> Problem:
     shape, w = setting.shape, 2.0 * np.pi * f_hz
     numerator = _without_fixed_zeros(setting, w, t)
     target = numerator - np.log(np.abs(polynomial(shape.a, w)) ** 2)
-    return Problem(t, target, np.ones_like(t), setting.zeros, setting.poles)
+    weight = np.ones_like(t) if setting.weight is None else np.interp(f_hz, setting.weight[0], setting.weight[1])
+    return Problem(t, target, weight, setting.zeros, setting.poles)
 
 
 def _without_fixed_zeros(setting: Setting, w: FloatArray, t: FloatArray) -> FloatArray:
