@@ -16,6 +16,7 @@ from a2d.design import kinds
 from a2d.design.hardware import BankSection, NetworkSection
 from a2d.design.section import Section
 from a2d.digital.methods import EXACT_AT_MATCH
+from a2d.digital.twin import Twin
 
 
 def sections_table(conversion: Conversion) -> RenderableType:
@@ -25,13 +26,18 @@ def sections_table(conversion: Conversion) -> RenderableType:
     rows = []
     for i, name in enumerate(chain.names):
         errors = [_decibels(j.sections[i].magnitude_db) if j.sections else "" for j in judged]
-        methods = ", ".join(dict.fromkeys(j.twin.methods[i] for j in judged if len(j.twin) == len(chain)))
+        methods = ", ".join(dict.fromkeys(_method(j.twin, i, len(chain)) for j in judged))
         entry = conversion.design.sections[chain.owners[i]]
         flat = not np.any(chain.a[i, :2])
         f0 = "" if flat else hertz(float(chain.f0_hz[i]))
         rows.append([name, describe(entry), f0, "everywhere" if flat else _match(conversion, i), methods, *errors])
     columns = ["section", "what", "f0", "exact at", "method", *rates]
     return table("Sections, and the worst magnitude error of each", columns, rows, left=2)
+
+
+def _method(twin: Twin, index: int, sections: int) -> str:
+    """A section's method, or what all sections of a fit have in common."""
+    return twin.methods[index] if len(twin) == sections else f"{twin.methods[0]}, {len(twin)} sections together"
 
 
 def _match(conversion: Conversion, index: int) -> str:
