@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from a2d.commands.terminal import hertz
 from a2d.compare.banks import JudgedBank, parallel_banks
 from a2d.compare.parallel import compare_bank
 from a2d.conversion import Conversion
 from a2d.design.model import Design
+from a2d.digital.parallel import ParallelTwin
 from a2d.firmware.bank_header import bank_header, bank_symbol, round_bank
 
 
@@ -34,9 +37,16 @@ def _lines(design: Design, judged: JudgedBank) -> list[str]:
             f"{judged.name} in parallel at {hertz(twin.sample_rate_hz)}: "
             f"{comparison.magnitude_db.worst:+.3g} dB at {hertz(comparison.magnitude_db.at_hz)}, "
             f"{comparison.phase_deg.worst:+.3g}° at {hertz(comparison.phase_deg.at_hz)}; "
-            f"{rounded.magnitude_db.worst:+.3g} dB in {number}"
+            f"{rounded.magnitude_db.worst:+.3g} dB in {number}{_moved(judged, twin, comparison.band_hz[1])}"
         )
     return lines
+
+
+def _moved(judged: JudgedBank, twin: ParallelTwin, top_hz: float) -> str:
+    """Which bands are exact at the band's upper end, since their own f0 lies above."""
+    pairs = zip(judged.bank.names, judged.bank.bands, twin.bands, strict=True)
+    names = [name for name, analog, band in pairs if np.any((analog.f0_hz > top_hz) & (band.match_hz == top_hz))]
+    return f"; exact at {hertz(top_hz)} for an f0 above the band: {', '.join(names)}" if names else ""
 
 
 def _number(design: Design) -> str:

@@ -95,6 +95,16 @@ def test_command_writes_header_and_manifest_and_tells_the_errors(bank, tmp_path,
     assert np.array(written["twins"][1]["sos"][3]) == pytest.approx(bank.twins[1].bands[3].sos, abs=0)
 
 
+def test_a_band_above_the_band_says_where_it_is_exact(tmp_path, capsys):
+    circuit = 'circuit = "rc_lowpass"\nparts = { R1 = "1k", C1 = "1n" }\n'
+    design = tmp_path / "bank.toml"
+    start = DESIGN.index("[[section.band]]")
+    design.write_text(DESIGN[:start] + f'[[section.band]]\nname = "air"\n{circuit}')
+    assert main(["convert", str(design), "--out", str(tmp_path / "out")]) == 0
+    text = " ".join(capsys.readouterr().out.split())
+    assert "in float32; exact at 20 kHz for an f0 above the band: air" in text
+
+
 def test_fixed_words_are_refused(bank):
     with pytest.raises(HeaderError, match="float32 or float64"):
         round_bank(bank.twins[0], "fixed")
