@@ -13,8 +13,8 @@ import a2d
 from tests.support.paths import ROOT
 
 STAGES = [
-    "errors", "arrays", "checks", "files", "design", "analog", "digital", "compare", "conversion", "wordlength",
-    "firmware", "listening", "report", "commands", "cli",
+    "version", "errors", "arrays", "checks", "files", "design", "analog", "digital", "compare", "conversion",
+    "wordlength", "firmware", "listening", "report", "commands", "cli",
 ]  # fmt: skip
 EDGE = ["__init__", "__main__"]  # may import everything
 MODULES = sorted((ROOT / "a2d").rglob("*.py"))
@@ -75,7 +75,7 @@ def test_no_cycles_between_modules() -> None:
         visit(name, ())
 
 
-HEAVY = ["scipy", "matplotlib", "soundfile", "jinja2"]
+HEAVY = ["scipy", "matplotlib", "soundfile", "jinja2", "numpy.ma", "importlib.metadata"]
 
 
 def test_a_plain_conversion_loads_nothing_heavy(tmp_path: Path) -> None:

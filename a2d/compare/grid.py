@@ -6,7 +6,7 @@ from collections.abc import Callable
 
 import numpy as np
 
-from a2d.arrays import FloatArray
+from a2d.arrays import FloatArray, rising
 
 POINTS = 400  # over the band, logarithmic: 1.7 % apart over three decades
 _CLUSTER = np.array([0.0, 0.06, 0.15, 0.3, 0.5, 0.75, 1.0, 1.5, 2.2, 3.2, 4.5])
@@ -32,7 +32,7 @@ def frequency_grid(b: FloatArray, a: FloatArray, band_hz: FloatArray) -> FloatAr
         offsets = width[:, np.newaxis] * np.concatenate([-_CLUSTER[:0:-1], _CLUSTER])
         clusters.append((f0[:, np.newaxis] * (1.0 + offsets)).ravel())
     points = np.concatenate([even, *clusters])
-    return np.unique(points[(points >= low) & (points <= high)])
+    return rising(points, low, high)
 
 
 def largest_between(

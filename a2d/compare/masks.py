@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from a2d.analog.chain import AnalogChain
-from a2d.arrays import FloatArray
+from a2d.arrays import FloatArray, rising
 from a2d.compare.errors import band_of
 from a2d.compare.grid import frequency_grid
 from a2d.compare.standards import disc_replay, fractional_octave, weighting
@@ -128,7 +128,7 @@ def mask_grid(mask: Mask, b: FloatArray, a: FloatArray, top_hz: float) -> FloatA
     centre = mask.reference_hz or np.sqrt(mask.range_hz[0] * mask.range_hz[1])
     even = np.geomspace(low, high, int(POINTS_AN_OCTAVE * np.log2(high / low)) + 2)
     points = np.concatenate([even, tenths, [centre], frequency_grid(b, a, np.array([low, high]))])
-    return np.unique(points[(points >= low) & (points <= high)])
+    return rising(points, low, high)
 
 
 def judge_response(chain: AnalogChain, twin: Twin, limits: Limits | None) -> tuple[MaskBreach, ...]:

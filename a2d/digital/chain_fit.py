@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from a2d.analog.response import chain_response, section_response
-from a2d.arrays import BoolArray, ComplexArray, FloatArray
+from a2d.arrays import BoolArray, ComplexArray, FloatArray, rising
 from a2d.digital.cascade import Cascade, back_to_sos, groups_of, in_v
 from a2d.digital.minimax import minimax
 from a2d.digital.rational.lawson import State, lawson, size
@@ -113,7 +113,7 @@ def task_of(
     """The grid of all sections together, without the bottoms of notches."""
     shape = shape_of(b, a)
     every = Setting(shape, np.full(len(b), rate), np.broadcast_to(band, (len(b), 2)), 2, 2)
-    points = np.unique(frequencies(every))
+    points = rising(frequencies(every).ravel())
     f_hz = np.sort(np.concatenate([points, 0.5 * (points[1:] + points[:-1])]))
     response = section_response(b, a, f_hz)
     clear = np.all(np.abs(response) > BOTTOM * np.abs(response).max(axis=-1, keepdims=True), axis=0)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-from importlib.metadata import PackageNotFoundError, version
 from typing import Any
 
 from a2d.compare.banks import JudgedBank, parallel_banks
@@ -11,16 +10,14 @@ from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion, Judged
 from a2d.digital.certificate import Certificate
 from a2d.firmware.control_manifest import control_tables
+from a2d.version import VERSION
 
 FORMAT = 1
 
 
 def tool_name() -> str:
     """`a2d` and its version."""
-    try:
-        return f"a2d {version('a2d')}"
-    except PackageNotFoundError:
-        return "a2d"
+    return f"a2d {VERSION}"
 
 
 def manifest(conversion: Conversion, sha256: str) -> str:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from a2d.arrays import FloatArray
+from a2d.arrays import FloatArray, rising
 from a2d.digital.response import chain_response
 
 _AROUND_POLE = np.array([0.0, 0.1, 0.25, 0.5, 0.8, 1.2, 2.0, 3.5, 6.0])
@@ -18,7 +18,7 @@ def angular_grid(sos: FloatArray, rate_hz: float, band_hz: tuple[float, float], 
     points = [np.geomspace(low, high, even)]
     points.extend(_around_roots(c, rate_hz) for c in (sos[:, :3], sos[:, 3:]))
     f = np.concatenate(points)
-    return np.unique(f[(f >= low) & (f <= high)])
+    return rising(f, low, high)
 
 
 def _around_roots(c: FloatArray, rate_hz: float) -> FloatArray:

@@ -117,7 +117,8 @@ def _step(rounded: Rounded, row: int) -> FloatArray:
 def _candidates(rounded: Rounded, row: int, moves: FloatArray, wanted: ComplexArray, basis: ComplexArray) -> FloatArray:
     """Words [N, 5]: the most promising feedback pairs, each with the neighbours of its best numerator."""
     step, unit = _step(rounded, row), np.ldexp(1.0, -rounded.fractions[row].astype(np.int32))
-    feedback = np.unique(rounded.words[row, 3:] + _FEEDBACK_STEPS * step[3:], axis=0)
+    pairs_around = rounded.words[row, 3:] + _FEEDBACK_STEPS * step[3:]
+    feedback = np.array(sorted(set(map(tuple, pairs_around.tolist()))))
     denominator = basis[0] + (feedback * unit[3:]) @ basis[1:]
     best = _best_numerators(moves * unit[:3], denominator, wanted, basis)
     centres = np.concatenate([best @ moves, feedback], axis=-1)
