@@ -9,6 +9,8 @@ from a2d.digital.rational.exchange import Alternation, alternation
 from a2d.digital.rational.lawson import Model, State
 
 CUTS = 4
+GONE_ASTRAY = 2.0
+"""Times the best so far at which the next round starts from the best again: the exchange need not fall every round."""
 LEAST_SINGULAR = 1e-12
 
 
@@ -37,7 +39,9 @@ def polish(model: Model, state: State, references: int, rounds: int) -> tuple[St
         lower = _largest(error) < largest
         best = State(_rows(lower, state.b, best.b), _rows(lower, state.a, best.a))
         largest = np.where(lower, _largest(error), largest)
-        state, error = best, model.error(best)[:, 0]
+        astray = _largest(error) > GONE_ASTRAY * largest
+        state = State(_rows(astray, best.b, state.b), _rows(astray, best.a, state.a))
+        error = model.error(state)[:, 0]
     return best, largest, bound
 
 
