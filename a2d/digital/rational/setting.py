@@ -17,6 +17,8 @@ FARTHEST_BELOW = 1e-4
 """The fit reaches below the band to half the lowest root's frequency, but no further than this part of its end."""
 CARRY_ON, LAST = 1.1, 0.98
 """A fit that is carried on ends at CARRY_ON times the resonance, which has to lie below LAST of half the rate."""
+BEYOND = 0.03
+"""The weight of errors above the band in such a fit."""
 HIGHEST_ROOT = 0.93
 """Of half the rate: roots that oscillate faster count as there when the first reference is set."""
 FAR = -1e30
@@ -28,7 +30,8 @@ class Setting:
     """N sections of one shape: `shape`, their `rate` [N] and `band` [N, 2] in Hz, and what of them is free.
 
     `zeros`, `poles` count the free roots; the zeros that stay where they are make the fixed factor of the numerator.
-    `weight` [2, W] holds frequencies in Hz, rising, and factors on the error between which it runs straight.
+    `weight` [2, W] holds frequencies in Hz, rising, and factors on the error between which it runs straight. Above
+    `counts_to` [N], Hz, errors count no more than BEYOND.
     """
 
     shape: Shape
@@ -37,6 +40,7 @@ class Setting:
     zeros: int
     poles: int
     weight: FloatArray | None = None
+    counts_to: FloatArray | None = None
 
     @property
     def half_angle(self) -> FloatArray:
@@ -46,7 +50,8 @@ class Setting:
     def rows(self, which: BoolArray | IntArray) -> Setting:
         """The sections `which` of these."""
         shape = Shape(self.shape.b[which], self.shape.a[which])
-        return replace(self, shape=shape, rate=self.rate[which], band=self.band[which])
+        counts_to = None if self.counts_to is None else self.counts_to[which]
+        return replace(self, shape=shape, rate=self.rate[which], band=self.band[which], counts_to=counts_to)
 
 
 def free_zeros(shape: Shape, rate: FloatArray) -> FloatArray:
@@ -115,7 +120,7 @@ def up_to_resonance(setting: Setting) -> Setting:
     Where the best fit of the band alone would set poles or zeros on the circle above it.
     """
     top = np.maximum(setting.band[:, 1], CARRY_ON * _highest_hz(setting))
-    return replace(setting, band=np.stack([setting.band[:, 0], top], axis=-1))
+    return replace(setting, band=np.stack([setting.band[:, 0], top], axis=-1), counts_to=setting.band[:, 1])
 
 
 def _highest_hz(setting: Setting) -> FloatArray:
@@ -135,6 +140,8 @@ def problem_of(setting: Setting, f_hz: FloatArray) -> Problem:
     numerator = _without_fixed_zeros(setting, w, t)
     target = numerator - np.log(np.abs(polynomial(shape.a, w)) ** 2)
     weight = np.ones_like(t) if setting.weight is None else np.interp(f_hz, setting.weight[0], setting.weight[1])
+    if setting.counts_to is not None:
+        weight = np.where(f_hz > setting.counts_to[:, np.newaxis] * (1.0 + 1e-9), BEYOND * weight, weight)
     return Problem(t, target, weight, setting.zeros, setting.poles)
 
 
