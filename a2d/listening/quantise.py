@@ -62,7 +62,7 @@ def to_steps(
     Parameters
     ----------
     samples
-        Any shape; ±1 is full scale.
+        Shape [n, channels]; ±1 is full scale.
     encoding
         A PCM entry of `ENCODINGS`.
     dither
@@ -81,7 +81,10 @@ def to_steps(
     if steps.size and (steps.min() < low or steps.max() > high):
         overs = int(np.count_nonzero(steps < low)) + int(np.count_nonzero(steps > high))
         np.clip(steps, low, high, out=steps)
-    return steps.astype(np.int32, order="C"), overs
+    whole = np.empty(steps.shape, dtype=np.int32)
+    for channel in range(steps.shape[-1]):  # the filters keep each channel in one piece, the file its frames
+        whole[..., channel] = steps[..., channel]
+    return whole, overs
 
 
 def peak_of(samples: FloatArray, first_frame: int) -> float:

@@ -21,6 +21,7 @@ from a2d.listening.quantise import ENCODINGS, peak_of, to_steps, triangular_dith
 BLOCK_FRAMES = 16_384  # a stereo block fits a core's own cache
 CONTAINERS = {".wav": "WAV", ".flac": "FLAC"}
 EXACT_IN_FLOAT32 = ("PCM_16", "PCM_24", "PCM_S8", "PCM_U8", "FLOAT")  # 24 bits of significand; read quicker
+FLOATS = ("FLOAT", "DOUBLE", "VORBIS", "OPUS")  # what can hold NaN
 LARGEST_WAV_BYTES = 4_000_000_000  # a WAV's length field has 32 bits; RF64 (EBU Tech 3306) is written beyond
 
 
@@ -88,7 +89,7 @@ def _decoded(path: Path, frames: int) -> Iterator[FloatArray]:
             block = source.read(frames, dtype=kept, always_2d=True)
             if not len(block):
                 return
-            if not np.isfinite(block).all():
+            if source.subtype in FLOATS and not np.isfinite(block).all():
                 raise AudioError(f"{path} holds a sample that is not a finite number (near sample {at})")
             at += len(block)
             yield block.astype(np.float64, order="F")  # each channel in one piece, as the filters want it
@@ -195,7 +196,8 @@ class AudioWriter:
             return
         steps, overs = to_steps(block, self.encoding, self._dither)
         self._overs += overs
-        self._store(steps << (32 - self.encoding.bits))
+        steps <<= 32 - self.encoding.bits  # the library takes the upper bits
+        self._store(steps)
 
     def _store(self, values: npt.NDArray[np.float32] | npt.NDArray[np.int32]) -> None:
         try:

@@ -39,9 +39,9 @@ def test_one_step_either_side_of_full_scale() -> None:
     values = np.array(
         [one - 2, one - 1, one - 0.6, one - 0.4, one, one + 1, -one + 1, -one, -one - 0.4, -one - 0.6, -one - 1]
     )
-    steps, overs = to_steps(values / one, ENCODINGS["24"], np.zeros)
+    steps, overs = to_steps(values[:, np.newaxis] / one, ENCODINGS["24"], np.zeros)
     top, low = 2**23 - 1, -(2**23)
-    np.testing.assert_array_equal(steps, [top - 1, top, top, top, top, top, low + 1, low, low, low, low])
+    np.testing.assert_array_equal(steps[:, 0], [top - 1, top, top, top, top, top, low + 1, low, low, low, low])
     assert overs == 5
 
 
@@ -68,7 +68,7 @@ def test_dither_error_has_a_quarter_step_of_variance(offset: float) -> None:
     n = 500_000
     generator = np.random.default_rng(11)
     steps, _ = to_steps(
-        np.full(n, (100.0 + offset) * STEP_16), ENCODINGS["16"], lambda shape: triangular_dither(generator, shape)
+        np.full((n, 1), (100.0 + offset) * STEP_16), ENCODINGS["16"], lambda shape: triangular_dither(generator, shape)
     )
     error = steps - (100.0 + offset)
     assert np.var(error) == pytest.approx(0.25, rel=0.01)
