@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 import sympy
 
+from a2d.analog.network import solve as solve_module
 from a2d.analog.network.degree import pole_degree, zero_degree
 from a2d.analog.network.parts import lay_out
 from a2d.analog.network.solve import CHECK_HZ, solve_network
@@ -237,6 +238,50 @@ def test_pairs_that_cancel_are_removed_and_mentioned():
     assert len(solution.roots.poles) == 0
     assert decibels(solution, [100.0]) == pytest.approx([-6.0206], abs=1e-4)
     assert solution.notes == ("a pole and a zero cancel at 159.15 Hz",)
+
+
+def test_a_response_far_below_its_largest_value_keeps_its_digits():
+    """77 µF behind coils: at 100 kHz H is 1e-7 of its largest, and a solve without refinement knows 8 digits."""
+    parts = {
+        "L0": coil(2.6e-3, "n0", "out", resistance=0.55),
+        "C1": c(77e-6, "out", "gnd"),
+        "L2": coil(83e-6, "in", "n0", resistance=30.0),
+        "C3": c(240e-9, "n0", "in"),
+        "R4": r(900e3, "out", "gnd"),
+    }
+    solution = solve_network(network(parts))
+    s = 2j * np.pi * np.array([1e5, 1e6])
+    z_in = 1 / (1 / (30.0 + s * 83e-6) + s * 240e-9)
+    z_out = 1 / (s * 77e-6 + 1 / 900e3)
+    expected = z_out / (z_in + 0.55 + s * 2.6e-3 + z_out)
+    assert chain_response(solution.b, solution.a, s.imag / (2 * np.pi)) == pytest.approx(expected, rel=1e-11)
+
+
+def test_real_poles_far_apart_have_sections_of_their_own():
+    """A coupling capacitor at 1.6 Hz and 47 pF at 339 kHz: no one frequency could be matched for both."""
+    parts = {
+        "C1": c(1e-5, "in", "a"),
+        "R1": r(1e4, "a", "m"),
+        "R2": r(1e4, "m", "out"),
+        "C2": c(47e-12, "m", "out"),
+        "U1": opamp("gnd", "m", "out"),
+    }
+    solution = solve_network(network(parts))
+    f0 = solution.a[:, 2] / solution.a[:, 1] / (2 * np.pi)
+    assert np.all(solution.a[:, 0] == 0.0)
+    assert f0 == pytest.approx([1.59155, 338627.5], rel=1e-5)
+
+
+def test_sections_that_do_not_agree_with_the_network_are_refused(monkeypatch):
+    """The check at run time: a millionth more gain in each of three sections is found out."""
+    sections = solve_module.second_order_sections
+    monkeypatch.setattr(solve_module, "second_order_sections", lambda roots: wrong(*sections(roots)))
+
+    def wrong(b, a):
+        return b * (1 + 1e-6), a
+
+    with pytest.raises(NetworkError, match=r"do not agree with the network at .* Hz \(3.0e-06 relative, allowed 1e-08"):
+        solve_network(bs468())
 
 
 @pytest.mark.parametrize("order", [30, 50])
