@@ -17,8 +17,8 @@ from a2d.design.section import Section
 
 
 def circuit_notes(conversion: Conversion) -> list[str]:
-    """f0, Q and gain of each section, what cancels, what op-amps and ends change, and match points that were moved."""
-    lines = _figure_lines(conversion)
+    """What cancels, what op-amps and ends change, and match points that were moved."""
+    lines: list[str] = []
     band = conversion.judged[0].comparison.band_hz
     for name, entry in _drawn(conversion.design.sections):
         network = network_of(entry)
@@ -43,18 +43,21 @@ def _is_hardware(conversion: Conversion, index: int) -> bool:
     return isinstance(entry, (NetworkSection, CircuitSection, BankSection))
 
 
-def _figure_lines(conversion: Conversion) -> list[str]:
+FIGURE_COLUMNS = ("section", "f0", "Q", "gain at 0 Hz", "at f0", "far above")
+
+
+def figure_rows(conversion: Conversion) -> list[list[str]]:
+    """f0, Q and gains of each section that came out of component values; the cells of `FIGURE_COLUMNS`."""
     chain = conversion.chain
     rows = [i for i in range(len(chain)) if _is_hardware(conversion, i)]
-    return [f"{chain.names[i]}: {_figures(figures(chain.b[i], chain.a[i]))}" for i in rows]
+    return [[chain.names[i], *_figures(figures(chain.b[i], chain.a[i]))] for i in rows]
 
 
-def _figures(f: Figures) -> str:
+def _figures(f: Figures) -> list[str]:
     if f.f0_hz is None:
-        return f"a plain gain of {_decibels(f.gain_0_db)}"
-    poles = f"f0 {hertz(f.f0_hz)}, " + ("first order" if f.q is None else f"Q {f.q:.4g}")
-    gains = f"{_decibels(f.gain_0_db)} at 0 Hz, {_decibels(f.gain_f0_db)} at f0, {_decibels(f.gain_inf_db)} far above"
-    return f"{poles}; gain {gains}"
+        return ["", "a plain gain", _decibels(f.gain_0_db), "", ""]
+    q = "first order" if f.q is None else f"{f.q:.4g}"
+    return [hertz(f.f0_hz), q, _decibels(f.gain_0_db), _decibels(f.gain_f0_db), _decibels(f.gain_inf_db)]
 
 
 def _decibels(value: float) -> str:

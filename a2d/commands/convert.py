@@ -8,6 +8,7 @@ from dataclasses import replace
 
 from a2d.commands import summary
 from a2d.commands.banks import bank_files
+from a2d.commands.circuits import FIGURE_COLUMNS, figure_rows
 from a2d.commands.control_summary import control_breaches, control_notes, controls_table
 from a2d.commands.delivery import delivery_of
 from a2d.commands.options import add_design, add_out
@@ -21,6 +22,8 @@ from a2d.firmware.deliver import Delivery
 from a2d.firmware.manifest import manifest, sos_table
 
 HELP = "make the digital twin of a design: table, C header, manifest; plots, report and sound on request"
+
+CIRCUITS_TEXT = "Natural frequency, Q and gain of each section that component values led to."
 
 
 def add_options(parser: argparse.ArgumentParser) -> None:
@@ -89,15 +92,22 @@ def _sound(args: argparse.Namespace) -> int:
 
 
 def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> bytes:
-    from a2d.report.content import Extras  # as above
+    from a2d.report.content import Extras, Finding  # as above
     from a2d.report.examples import examples
     from a2d.report.findings import findings
     from a2d.report.page import report_page
     from a2d.report.spread_finding import spread_finding
 
     spread, why_not = spread_finding(conversion)
-    found = [*findings(conversion, delivery), *([spread] if spread else [])]
-    notes = [*summary.notes(conversion), *control_notes(conversion), *([why_not] if why_not else [])]
+    rows = figure_rows(conversion)
+    circuits = [Finding("Sections out of circuits", CIRCUITS_TEXT, "f0, Q and gains", FIGURE_COLUMNS, rows)] if rows else []
+    found = [*circuits, *findings(conversion, delivery), *([spread] if spread else [])]
+    notes = [
+        *summary.notes(conversion),
+        *summary.reasons(conversion),
+        *control_notes(conversion),
+        *([why_not] if why_not else []),
+    ]
     try:
         recordings = examples(conversion)
     except AudioError as error:
@@ -113,13 +123,10 @@ def show(args: argparse.Namespace, conversion: Conversion, delivery: Delivery, n
     out.print(summary.sections_table(conversion))
     if args.coefficients:
         print("\n".join(summary.coefficient_lines(conversion)), end="\n\n")
-    equivalents = summary.q_table(conversion)
-    if equivalents is not None:
-        out.print(equivalents)
-    out.print(summary.errors_table(conversion))
-    controls = controls_table(conversion.controls)
-    if controls is not None:
-        out.print(controls)
+    optional = (summary.choices_table(conversion), summary.circuits_table(conversion), summary.q_table(conversion))
+    for shown in (*optional, summary.errors_table(conversion), controls_table(conversion.controls)):
+        if shown is not None:
+            out.print(shown)
     for note in [*summary.notes(conversion), *control_notes(conversion)]:
         out.print(f"- {note}")
     out.print("Firmware", style="bold")

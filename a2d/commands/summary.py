@@ -8,7 +8,7 @@ from rich.console import RenderableType
 from a2d.analog.kinds import peaking_w3c_q
 from a2d.analog.kinds.equalisers import equivalent_q
 from a2d.commands.banks import bank_notes
-from a2d.commands.circuits import circuit_notes
+from a2d.commands.circuits import FIGURE_COLUMNS, circuit_notes, figure_rows
 from a2d.commands.terminal import hertz, table
 from a2d.compare.errors import Worst
 from a2d.conversion import Conversion
@@ -26,13 +26,13 @@ def sections_table(conversion: Conversion) -> RenderableType:
     rows = []
     for i, name in enumerate(chain.names):
         errors = [_decibels(j.sections[i].magnitude_db) if j.sections else "" for j in judged]
-        methods = ", ".join(dict.fromkeys(_method(j.twin, i, len(chain)) for j in judged))
+        methods = "\n".join(dict.fromkeys(_method(j.twin, i, len(chain)).replace("_", " ") for j in judged))
         entry = conversion.design.sections[chain.owners[i]]
         flat = not np.any(chain.a[i, :2])
         f0 = "" if flat else hertz(float(chain.f0_hz[i]))
         rows.append([name, describe(entry), f0, "everywhere" if flat else _match(conversion, i), methods, *errors])
     columns = ["section", "what", "f0", "exact at", "method", *rates]
-    return table("Sections, and the worst magnitude error of each", columns, rows, left=2)
+    return table("Sections, and the worst magnitude error of each", columns, rows, left=2, folding=(1, 4))
 
 
 def _method(twin: Twin, index: int, sections: int) -> str:
@@ -124,11 +124,33 @@ def notes(conversion: Conversion) -> list[str]:
             f"{e.name}: shelf {'of first order' if e.order == 1 else 'as in the W3C note'}, half the gain in dB at f0"
             for e in shelves
         ]
-        + _reasons(conversion)
     )
 
 
-def _reasons(conversion: Conversion) -> list[str]:
+def circuits_table(conversion: Conversion) -> RenderableType | None:
+    """f0, Q and gains of sections that came out of component values; None without such a section."""
+    rows = figure_rows(conversion)
+    return table("Sections out of circuits", FIGURE_COLUMNS, rows) if rows else None
+
+
+def choices_table(conversion: Conversion) -> RenderableType | None:
+    """Where `auto` took more than the simplest method: what it took and what was tried; None where it did not."""
+    rows = [
+        [hertz(judged.twin.sample_rate_hz), name, method, tried]
+        for judged in conversion.judged
+        for name, method, why in zip(judged.twin.names, judged.twin.methods, judged.twin.why, strict=False)
+        for tried in [why.partition(": ")[2]]
+        if "," in tried
+    ]
+    columns = ["rate", "section", "taken", "the section's own worst error by each method tried"]
+    return (
+        table("Methods chosen, where the simplest was not enough", columns, rows, left=4, folding=(3,))
+        if rows
+        else None
+    )
+
+
+def reasons(conversion: Conversion) -> list[str]:
     """Why sections have the method that they have, where that was chosen and not stated; each reason once."""
     found: dict[str, list[str]] = {}
     for judged in conversion.judged:

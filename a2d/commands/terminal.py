@@ -11,7 +11,7 @@ from rich.console import Console
 from rich.table import Table
 from rich.text import Text
 
-_PIPED_WIDTH = 110
+_PIPED_WIDTH = 120
 
 
 def console(stream: TextIO | None = None) -> Console:
@@ -37,5 +37,7 @@ def table(
 
 
 def hertz(f_hz: float) -> str:
-    """`63 Hz`, `3.2 kHz`: five digits at most."""
+    """`63 Hz`, `3.2 kHz`, `2.7 MHz`: five digits at most."""
+    if f_hz >= 999_995.0:
+        return f"{f_hz / 1e6:.5g} MHz"
     return f"{f_hz / 1000.0:.5g} kHz" if f_hz >= 999.995 else f"{f_hz:.5g} Hz"
