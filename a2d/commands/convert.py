@@ -100,7 +100,9 @@ def _report(source: DesignFile, conversion: Conversion, delivery: Delivery) -> b
 
     spread, why_not = spread_finding(conversion)
     rows = figure_rows(conversion)
-    circuits = [Finding("Sections out of circuits", CIRCUITS_TEXT, "f0, Q and gains", FIGURE_COLUMNS, rows)] if rows else []
+    circuits = (
+        [Finding("Sections out of circuits", CIRCUITS_TEXT, "f0, Q and gains", FIGURE_COLUMNS, rows)] if rows else []
+    )
     found = [*circuits, *findings(conversion, delivery), *([spread] if spread else [])]
     notes = [
         *summary.notes(conversion),
