@@ -14,10 +14,10 @@ from functools import cache
 import numpy as np
 
 from a2d.arrays import ComplexArray, FloatArray
-from a2d.digital.response import polynomial
-from a2d.wordlength.noise import boundary_peaks, circle_grid, noise_gains, power_gain, shape_of
+from a2d.wordlength.noise import boundary_peaks, circle_grid, mean_over_circle, noise_gains, squared_responses
 
-ALL_ORDERS_UP_TO = 8  # 255 sets of sections; the work doubles with each one more
+ALL_ORDERS_UP_TO = 8  # 1024 placings; the work more than doubles with each section
+MOVES_UP_TO = 14  # beyond, only neighbours are swapped
 
 
 @dataclass(frozen=True, eq=False)
@@ -101,24 +101,17 @@ def _cost_of_placing(sos: FloatArray, structure: str, error_feedback: int) -> Co
     of what it was.
     """
     count = len(sos)
-    u = circle_grid(sos)
-    sections = np.abs(polynomial(sos[:, :3], u) / polynomial(sos[:, 3:], u))
-    shape = shape_of(structure, error_feedback)
+    w, u = circle_grid(sos)
+    shaped, passed = squared_responses(sos, u, structure, error_feedback)
 
     @cache
-    def peak(placed: int) -> float:
-        return float(np.max(np.prod([sections[j] for j in range(count) if placed >> j & 1], axis=0)))
-
-    @cache
-    def gain(k: int, after: int) -> float:
-        path = sos[[k] + [j for j in range(count) if after >> j & 1]].copy()
-        path[0, :3] = shape
-        return float(power_gain(path))
+    def through(placed: int) -> FloatArray:
+        return np.asarray(np.prod(passed[[j for j in range(count) if placed >> j & 1]], axis=0))
 
     def cost(before: int, k: int) -> float:
         placed = before | 1 << k
         after = ((1 << count) - 1) & ~placed
-        return gain(k, after) * peak(placed) ** 2
+        return float(mean_over_circle(shaped[k] * through(after), w) * np.max(through(placed)))
 
     return cost
 
@@ -136,26 +129,31 @@ def _all_orders(count: int, cost: Cost) -> tuple[int, ...]:
 
 
 def _moves(count: int, cost: Cost) -> tuple[int, ...]:
-    """From the designed order and its reverse, move one section at a time as long as that helps."""
+    """From a few orders, move one section at a time (or swap two neighbours) as long as that helps."""
+    starts = (tuple(range(count)), tuple(reversed(range(count))), _greedy(count, cost))
+    found = [_improved(start, cost) for start in starts]
+    return min(found)[1]
 
-    def total(order: tuple[int, ...]) -> float:
+
+def _improved(order: tuple[int, ...], cost: Cost) -> tuple[float, tuple[int, ...]]:
+    count = len(order)
+    reach = count if count <= MOVES_UP_TO else 1
+    known = cache(cost)
+
+    def total(candidate: tuple[int, ...]) -> float:
         before, noise = 0, 0.0
-        for k in order:
-            noise += cost(before, k)
+        for k in candidate:
+            noise += known(before, k)
             before |= 1 << k
         return noise
 
-    found = []
-    for start in (tuple(range(count)), tuple(reversed(range(count))), _greedy(count, cost)):
-        order, noise = start, total(start)
-        while True:
-            candidates = [_moved(order, i, j) for i in range(count) for j in range(count) if i != j]
-            best = min(candidates, key=total)
-            if not total(best) < noise:
-                break
-            order, noise = best, total(best)
-        found.append((noise, order))
-    return min(found)[1]
+    noise = total(order)
+    while True:
+        moves = [(i, j) for i in range(count) for j in range(count) if 0 < abs(i - j) <= reach]
+        best = min((_moved(order, i, j) for i, j in moves), key=total)
+        if not total(best) < noise:
+            return noise, order
+        order, noise = best, total(best)
 
 
 def _greedy(count: int, cost: Cost) -> tuple[int, ...]:

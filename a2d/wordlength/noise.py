@@ -17,6 +17,7 @@ _DOUBLINGS = 60  # of the time that the sum runs over: poles within 2^-55 of the
 _SETTLED = 1e-17
 _LONGEST_RESPONSE = 1 << 20
 _TIME_CONSTANTS = 30.0  # exp(-30) = 1e-13 is left
+_EXACT_UP_TO = 12  # sections; the work of the exact sum grows with the fourth power
 _AROUND = np.concatenate([-np.geomspace(0.02, 6.0, 24)[::-1], [0.0], np.geomspace(0.02, 6.0, 24)])
 _EVEN = np.concatenate([[0.0], np.geomspace(1e-5, 0.5, 200), np.linspace(0.5, np.pi, 200)[1:]])
 
@@ -72,9 +73,35 @@ def state_equations(sos: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray
 def noise_gains(sos: FloatArray, structure: str = "direct_form_1", error_feedback: int = 0) -> FloatArray:
     """The power gain from each section's rounding to the output of a cascade `sos` [S, 6]; shape [S].
 
-    The noise power at the output is their sum times q²/12.
+    The noise power at the output is their sum times q²/12. Long cascades are integrated over frequency, which is good
+    to 0.5 % (0.02 dB).
     """
+    if len(sos) > _EXACT_UP_TO:
+        return noise_gains_by_frequency(sos, structure, error_feedback)
     return np.array([source_gain(sos, k, structure, error_feedback) for k in range(len(sos))])
+
+
+def noise_gains_by_frequency(sos: FloatArray, structure: str = "direct_form_1", error_feedback: int = 0) -> FloatArray:
+    """`noise_gains` by Parseval's theorem, (1/π)·∫|H|² dw from 0 to π, on a grid dense around every resonance."""
+    w, u = circle_grid(sos)
+    shaped, passed = squared_responses(sos, u, structure, error_feedback)
+    behind = np.ones_like(passed)
+    behind[:-1] = np.cumprod(passed[:0:-1], axis=0)[::-1]
+    return mean_over_circle(shaped * behind, w)
+
+
+def squared_responses(
+    sos: FloatArray, u: ComplexArray, structure: str, error_feedback: int
+) -> tuple[FloatArray, FloatArray]:
+    """|shape/A|² of each section's own noise and |B/A|² of what passes it, at 1 - z⁻¹ = `u` [F]; both [S, F]."""
+    shape = np.broadcast_to(np.array(shape_of(structure, error_feedback)), (len(sos), 3))
+    below = polynomial(sos[:, 3:], u)
+    return np.abs(polynomial(shape, u) / below) ** 2, np.abs(polynomial(sos[:, :3], u) / below) ** 2
+
+
+def mean_over_circle(values: FloatArray, w: FloatArray) -> FloatArray:
+    """(1/π)·∫ values dw by the trapezoidal rule, `values` [..., F] at angles `w` [F] rising from 0 to π."""
+    return np.asarray(np.sum((values[..., 1:] + values[..., :-1]) * np.diff(w), axis=-1) / (2.0 * np.pi))
 
 
 def source_gain(sos: FloatArray, k: int, structure: str, error_feedback: int) -> float:
@@ -92,13 +119,16 @@ def noise_dbfs(gains: FloatArray, sample_fraction: int, output_shift: int = 0) -
 
 def boundary_peaks(sos: FloatArray) -> FloatArray:
     """The largest |H| from the input to each section's output: what a sine can reach there; [S, 6] -> [S]."""
-    u = circle_grid(sos)
+    _, u = circle_grid(sos)
     sections = np.abs(polynomial(sos[:, :3], u) / polynomial(sos[:, 3:], u))
     return np.asarray(np.max(np.cumprod(sections, axis=0), axis=-1))
 
 
 def boundary_sums(sos: FloatArray) -> FloatArray:
-    """Σ|h| from the input to each section's output: what any signal within ±1 can reach there; [S, 6] -> [S]."""
+    """Σ|h| from the input to each section's output: what any signal within ±1 can reach there; [S, 6] -> [S].
+
+    With a pole closer than 3e-5 to the circle the response is folded, and the sum a lower bound.
+    """
     margin = max(float(np.min(margin_to_circle(sos))), _TIME_CONSTANTS / _LONGEST_RESPONSE)
     count = min(_LONGEST_RESPONSE, 1 << max(8, int(np.ceil(np.log2(2.0 * _TIME_CONSTANTS / margin)))))
     w = 2.0 * np.pi * np.arange(count // 2 + 1) / count
@@ -107,8 +137,8 @@ def boundary_sums(sos: FloatArray) -> FloatArray:
     return np.asarray(np.sum(np.abs(np.fft.irfft(prefix, count)), axis=-1))
 
 
-def circle_grid(sos: FloatArray) -> ComplexArray:
-    """1 - z⁻¹ at angles that miss no resonance of `sos` [S, 6]."""
+def circle_grid(sos: FloatArray) -> tuple[FloatArray, ComplexArray]:
+    """Angles [F] from 0 to π that miss no resonance of `sos` [S, 6], rising, and 1 - z⁻¹ there."""
     angles = [_EVEN]
     for c0, c1, c2 in (sos[:, :3].T, sos[:, 3:].T):
         pair = c1 * c1 < 4.0 * c0 * c2
@@ -116,5 +146,5 @@ def circle_grid(sos: FloatArray) -> ComplexArray:
         angle = np.arctan2(np.sqrt(4.0 * c0[pair] * c2[pair] - c1[pair] ** 2), -c1[pair] * np.sign(c0[pair]))
         width = np.clip(np.abs(1.0 - radius), 1e-6 * angle, angle)
         angles.append((angle[:, np.newaxis] + width[:, np.newaxis] * _AROUND).ravel())
-    w = np.clip(np.concatenate(angles), 0.0, np.pi)
-    return np.asarray(2.0 * np.sin(w / 2.0) ** 2 + 1j * np.sin(w))
+    w = np.unique(np.clip(np.concatenate(angles), 0.0, np.pi))
+    return w, np.asarray(2.0 * np.sin(w / 2.0) ** 2 + 1j * np.sin(w))

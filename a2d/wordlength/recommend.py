@@ -10,7 +10,7 @@ from a2d.digital.twin import Twin
 from a2d.errors import RoundingError
 from a2d.wordlength.choose import ACCEPTED_DB, prove_or_refuse
 from a2d.wordlength.formats import Number
-from a2d.wordlength.noise import noise_dbfs, noise_gains
+from a2d.wordlength.noise import noise_dbfs, noise_gains_by_frequency
 from a2d.wordlength.structures import TITLES
 
 QUIET_DBFS = -120.0  # about the noise of a very good 24-bit converter (common practice)
@@ -89,7 +89,7 @@ def candidates(twin: Twin, number: Number, sample_fraction: int, band_hz: tuple[
     for structure, error_feedback, multiplies, additions, states, roundings in _FIXED if fixed else _FLOAT:
         error = _error_db(twin, number, structure, band_hz)
         shaping = _shaping(structure, error_feedback, fixed)
-        noise = noise_dbfs(roundings * noise_gains(twin.sos, *shaping), step_bits)
+        noise = noise_dbfs(roundings * noise_gains_by_frequency(twin.sos, *shaping), step_bits)
         found.append(Candidate(structure, error_feedback, error, noise, multiplies, additions, states))
     return tuple(found)
 
