@@ -83,13 +83,14 @@ def test_value_names():
 
 
 def test_a_network_beyond_the_fast_way_is_solved_directly():
-    """A small capacitor feeds a coil: H at the shift is far below its largest value, and the fast way 1e-9 off."""
+    """Picofarads drive 800 µF: H is below 4e-7 everywhere, and the fast way 1e-8 of that off."""
     parts = {
-        "L0": coil(0.39, "n1", "n0", resistance=9.5),
-        "L1": coil(2.7e-5, "n1", "out", resistance=20.0),
-        "R2": r(390e3, "in", "gnd"),
-        "C3": c(1.6e-6, "n1", "gnd"),
-        "C4": c(17e-12, "in", "n0"),
+        "R0": r(7.6, "gnd", "n0"),
+        "C1": c(9.5e-12, "n0", "in"),
+        "C2": c(4.4e-10, "n0", "in"),
+        "C3": c(2.2e-11, "n0", "out"),
+        "C4": c(8e-4, "gnd", "out"),
+        "R5": r(5.1, "n0", "out"),
     }
     net = network(parts)
     sets = np.array([nominal_values(net)] * 3)
