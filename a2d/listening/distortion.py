@@ -24,7 +24,8 @@ def looks_clipped(samples: FloatArray, plan: SweepPlan, latency_samples: int) ->
     A sine of w radians a sample has x[n+1] - 2·x[n] + x[n-1] = -(2 - 2·cos w)·x[n]; a top that was cut off, before or
     in the recorder, has nothing like it. The sweep's own frequency is known at every moment.
     """
-    return _stays_at_full_scale(samples) or _flattest(samples, plan, latency_samples) < FLAT
+    centred = samples - np.mean(samples)  # an offset of the recorder is no flat top
+    return _stays_at_full_scale(samples) or _flattest(centred, plan, latency_samples) < FLAT
 
 
 def _stays_at_full_scale(samples: FloatArray) -> bool:

@@ -87,6 +87,17 @@ def test_clipped_at_full_scale() -> None:
     assert "clipped" in verdict(np.clip(loud, -1.0, 1.0 - 2.0**-23)).words
 
 
+def test_an_offset_and_a_late_start_are_no_faults() -> None:
+    recorded = device(PLAYED, TWINS[RATE].sos, RATE)[int(0.3 * RATE) :]
+    assert verdict(recorded + 0.05).words == ("right filter",)
+
+
+def test_mains_hum_does_not_pass() -> None:
+    clean = device(PLAYED, TWINS[RATE].sos, RATE)
+    hum = 10 ** (-45 / 20) * np.sin(2 * np.pi * 50.0 * np.arange(clean.size) / RATE)
+    assert not verdict(clean + hum).right
+
+
 @pytest.mark.parametrize("noise_dbfs", [-100.0, -60.0, -40.0])
 def test_noise_is_not_taken_for_clipping(noise_dbfs: float) -> None:
     for sections in (FLAT, TWINS[RATE].sos):
