@@ -91,6 +91,8 @@ def run(args: argparse.Namespace) -> int:
     }
     report = [{"channel": c.number} | channel_data(c.measured, c.verdict, c.agreements) for c in channels]
     files[f"{name}.measure.json"] = json.dumps({"recording": args.recording.name, "channels": report}, indent=1) + "\n"
+    for channel in channels:
+        files |= _plots(channel, args.against, f"{name}.{channel.number}.response")
     write_all(args.out, files)
     for channel in channels:
         _show(channel)
@@ -144,6 +146,19 @@ def _one(samples: FloatArray, number: int, option: str) -> FloatArray:
     if not 1 <= number <= samples.shape[1]:
         raise AudioError(f"{option} asks for channel {number} of a recording with {samples.shape[1]} (counted from 1)")
     return samples[:, number - 1]
+
+
+def _plots(channel: Channel, against: str, stem: str) -> dict[str, bytes | str]:
+    """The response beside the one that it should be; nothing without a design."""
+    found = channel.agreements.get(against)
+    if found is None:
+        return {}
+    from a2d.report.fit_plot import Pair, pair_plot  # matplotlib only once there is something to draw
+
+    f = channel.measured.f_hz
+    level = decibels(channel.measured.response) - found.alignment.gain_db
+    pair = Pair(f, level, level - found.error_db, against, found.error_db, found.error_deg)
+    return pair_plot(pair, stem, f"Measured, channel {channel.number}, gain and delay taken out")
 
 
 def _show(channel: Channel) -> None:

@@ -57,6 +57,8 @@ def test_right_filter_and_the_fit_of_it(design: Path, tmp_path: Path, capsys: py
     arguments = ["measure", str(tmp_path / "bench.wav"), str(design), "--out", str(out), "--sweep-seconds", "3"]
     assert main(arguments) == 0
     assert "verdict: right filter" in capsys.readouterr().out
+    plots = {"bench.1.response.svg", "bench.1.response.png"}
+    assert {p.name for p in out.iterdir()} == {"bench.1.response.csv", "bench.measure.json"} | plots
     (channel,) = json.loads((out / "bench.measure.json").read_text())["channels"]
     assert channel["latency_ms"] == pytest.approx(104.77, abs=1e-3)
     assert channel["against"]["twin"]["gain_db"] == pytest.approx(-6.02, abs=0.01)
