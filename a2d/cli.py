@@ -14,7 +14,7 @@ from types import ModuleType
 from a2d.errors import A2dError
 
 # Each is a module a2d.commands.NAME with HELP, add_options(parser) and run(args) -> exit status.
-COMMANDS = ("convert", "check", "render", "measure", "fit", "list", "controls", "spread")
+COMMANDS = ("convert", "check", "controls", "spread", "render", "measure", "fit", "list")
 BAD_INPUT = 2
 
 

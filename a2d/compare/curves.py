@@ -9,7 +9,7 @@ from a2d.arrays import ComplexArray, FloatArray
 from a2d.digital import response as digital
 from a2d.digital.response import unit_delay_complement
 
-FLOOR_DB = 100.0  # below the analog response's maximum in the band
+FLOOR_DB = 80.0  # below the analog maximum in the band: under the noise of most equipment (common practice)
 
 MAGNITUDE, PHASE, GROUP_DELAY = range(3)
 

@@ -24,7 +24,7 @@ class BankComparison:
 
 
 def compare_bank(bank: Bank, twin: ParallelTwin, band_hz: tuple[float, float]) -> BankComparison:
-    """Worst errors between grid points too; what lies 100 dB below the largest response counts as lying there."""
+    """Worst errors between grid points too; what lies 80 dB below the largest response counts as lying there."""
     b = np.concatenate([band.b for band in bank.bands])
     a = np.concatenate([band.a for band in bank.bands])
     grid = frequency_grid(b, a, np.asarray(band_hz))

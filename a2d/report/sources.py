@@ -16,7 +16,7 @@ OTHER_SOURCES: tuple[str, ...] = (
     "Straight-line asymptotes: H. W. Bode, Network Analysis and Feedback Amplifier Design, 1945, chapter XV.",
     "H(s) of peaking and shelving sections, unless the file says otherwise: W3C Group Note, Audio EQ Cookbook, "
     "8 June 2021.",
-    "Errors: twin minus analog, maximised between grid points over the stated band. What lies more than 100 dB below "
+    "Errors: twin minus analog, maximised between grid points over the stated band. What lies more than 80 dB below "
     "the analog maximum counts as lying there, and its phase and delay are not judged.",
 )
 

@@ -32,8 +32,8 @@ def test_the_main_demo_is_as_promised() -> None:
 
 
 def test_rendered_audio_is_what_the_command_makes(tmp_path: Path) -> None:
-    options = "--signal sweep --rate 48000 --bits 16 --sweep-seconds 2 --write analog twin difference".split()
-    assert main(["render", str(EXAMPLES / "harbour_eq.toml"), "--out", str(tmp_path), *options]) == 0
+    options = "--signal sweep --bits 16 --sweep-seconds 2 --write analog twin difference".split()
+    assert main(["render", str(EXAMPLES / "harbour_air.toml"), "--out", str(tmp_path), *options]) == 0
     committed = sorted(RENDERED.glob("*.wav"))
     assert len(committed) == 3
     for path in committed:
