@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -183,19 +184,15 @@ def test_unknown_panel_q_with_frequency_and_gain_held() -> None:
         fit_values(measure(chain, 4), guesses, [(2, "q")])
 
 
-def test_the_text_is_a_design_of_the_same_response(tmp_path: pytest.TempPathFactory) -> None:
-    w, v = 2 * np.pi * 400.0, 2 * np.pi * 2_000.0
+def test_the_text_is_a_design_of_the_same_response(tmp_path: Path) -> None:
     sections = [FittedSection("pole_zero", {"f0": 400.0, "q": 0.3, "zero_f0": 2_000.0, "zero_q": 2.0}),
                 FittedSection("peaking", {"f0": 1_234.5, "q": 0.7, "gain": -3.25}),
                 FittedSection("high_shelf_1", {"f0": 5_000.0, "gain": 4.0})]  # fmt: skip
-    del w, v
-    from a2d.analog.fit import chain_of as built
-
     fit = Fit(tuple(sections), -6.0, True, 0.0, 0.0, MeasuredResponse(F, 0 * F, None), 0 * F, None, ())
-    path = tmp_path / "fitted.toml"  # type: ignore[operator]
+    path = tmp_path / "fitted.toml"
     path.write_text(design_text(fit, "fitted", [48_000.0], with_gain=True), "utf-8")
     design = read_design(path)
-    want = built(sections).response(F) * -(10 ** (-6 / 20))
+    want = fit.chain().response(F) * -(10 ** (-6 / 20))
     np.testing.assert_allclose(build_chain(design).response(F), want, rtol=1e-6)  # seven digits are written
     assert as_fitted(design.sections[1]).values == pytest.approx(sections[1].values)
     with pytest.raises(AudioError, match='section "s1_pole_zero" has no values that can be fitted'):

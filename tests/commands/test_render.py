@@ -121,7 +121,7 @@ def test_faults_are_one_message(
 ) -> None:
     assert main(["render", str(design), *extra, "--out", str(tmp_path / "o")]) == 2
     assert message in capsys.readouterr().err
-    assert not list((tmp_path / "o").glob("*")) if (tmp_path / "o").exists() else True
+    assert [p for p in tmp_path.rglob("*") if p.is_file()] == [design]
 
 
 def test_same_bytes_twice(design: Path, tmp_path: Path) -> None:
