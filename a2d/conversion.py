@@ -95,5 +95,5 @@ def convert_at(design: Design, chain: AnalogChain, sample_rate_hz: float) -> Jud
     sections = compare_sections(chain, twin, (low, high)) if alone else ()
     proofs = certify(twin.sos, chain.b, chain.a, sample_rate_hz, np.array([low, high])) if alone else ()
     breaches = verdict(chain, twin, comparison, design.limits)
-    advice = remedies(chain, sample_rate_hz, design.limits, attempt) if breaches and design.limits else ()
+    advice = remedies(chain, sample_rate_hz, design.limits, attempt, breaches) if breaches and design.limits else ()
     return Judged(twin, comparison, sections, breaches, proofs, advice)

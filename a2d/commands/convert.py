@@ -149,6 +149,8 @@ def report_breaches(conversion: Conversion, delivery: Delivery) -> int:
             print(f"a2d convert: limit broken{after} at {judged.twin.sample_rate_hz:g} Hz: {breach}", file=sys.stderr)
         for remedy in judged.advice:
             print(f"a2d convert: at {judged.twin.sample_rate_hz:g} Hz {remedy}", file=sys.stderr)
+        if judged.breaches and not judged.advice:
+            print("a2d convert: no other method, scope or doubled rate that was tried comes nearer", file=sys.stderr)
     for line in control_breaches(conversion.controls):
         within = False
         print(f"a2d convert: {line}", file=sys.stderr)

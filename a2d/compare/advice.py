@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 from a2d.analog.chain import AnalogChain
@@ -58,13 +58,17 @@ class Attempt:
     weight_phase: float = 0.0
 
 
-def remedies(chain: AnalogChain, rate: float, limits: Limits, made: Attempt) -> tuple[Remedy, ...]:
+def remedies(
+    chain: AnalogChain, rate: float, limits: Limits, made: Attempt, broken: tuple[Breach, ...]
+) -> tuple[Remedy, ...]:
     """The first change of method or scope that keeps the limits, and a doubled rate where that does.
 
-    Each is tried and compared, from the simplest on. Where none keeps them, the one that comes nearest.
+    Each is tried and compared, from the simplest on. Where none keeps them, the one that comes nearest, if any comes
+    nearer than the twin whose limits are `broken`.
     """
     kept, tried = [], []
-    for change, attempt in _changes(made):
+    in_phase = not any(breach.unit == "dB" for breach in broken)
+    for change, attempt in _changes_of_phase(made) if in_phase else _changes(made):
         remedy = _try(chain, rate, limits, attempt, change)
         if remedy is not None:
             tried.append(remedy)
@@ -74,9 +78,10 @@ def remedies(chain: AnalogChain, rate: float, limits: Limits, made: Attempt) -> 
     doubled = _try(chain, 2.0 * rate, limits, made, f"a rate of {2.0 * rate:g} Hz")
     if doubled is not None and not doubled.breaches:
         kept.append(doubled)
-    if kept or not tried:
+    nearer = [remedy for remedy in tried if _passed(remedy.breaches) < _passed(broken)]
+    if kept or not nearer:
         return tuple(kept)
-    return (min(tried, key=_passed),)
+    return (min(nearer, key=lambda remedy: _passed(remedy.breaches)),)
 
 
 def _changes(made: Attempt) -> Iterator[tuple[str, Attempt]]:
@@ -89,6 +94,16 @@ def _changes(made: Attempt) -> Iterator[tuple[str, Attempt]]:
     for extra in range(first, first + MOST_EXTRA + 1):
         text = 'method = "minimax", scope = "chain"' + (f", extra_sections = {extra}" if extra else "")
         yield text, Attempt(("minimax",) * count, made.match_hz, "chain", extra, made.weight_phase)
+
+
+def _changes_of_phase(made: Attempt) -> Iterator[tuple[str, Attempt]]:
+    """Fits in which the phase counts, and the bilinear transform, whose phase is often the better one."""
+    count = len(made.methods)
+    for weight in (0.3, 1.0, 3.0):
+        text = f'method = "minimax", weight_phase = {weight:g}'
+        yield text, Attempt(("minimax",) * count, made.match_hz, weight_phase=weight)
+    if set(made.methods) != {"bilinear"}:
+        yield 'method = "bilinear"', Attempt(("bilinear",) * count, made.match_hz)
 
 
 def _try(chain: AnalogChain, rate: float, limits: Limits, attempt: Attempt, change: str) -> Remedy | None:
@@ -128,11 +143,6 @@ def stated_band(limits: Limits | None) -> tuple[float, float] | None:
     return None if limits is None or limits.band is None else (float(limits.band[0]), float(limits.band[1]))
 
 
-def _passed(remedy: Remedy) -> float:
-    """By what factor the worst limit is passed."""
-    return max(abs(b.worst) / max(abs(b.limit), 1e-30) for b in remedy.breaches)
-
-
-def lines(found: Sequence[Remedy]) -> list[str]:
-    """What to tell the user."""
-    return [str(remedy) for remedy in found] or ["no other method, scope or rate comes nearer"]
+def _passed(breaches: tuple[Breach, ...]) -> float:
+    """By what factor the worst limit is passed; 0 where none is."""
+    return max((abs(b.worst) / max(abs(b.limit), 1e-30) for b in breaches), default=0.0)

@@ -17,8 +17,10 @@ from a2d.digital.shapes import shape_of
 
 STEPS, ROUNDS = 100, 20
 STEPS_OF_ONE = 300
-"""Lawson's steps where there is one start and nothing to be added to it: a long fit leaves an added section in a
-narrow valley."""
+"""Lawson's steps for several sections from one start with nothing to be added.
+
+A long fit would leave an added section in a narrow valley.
+"""
 CARRIED_ON = 2
 """How many of several tries, the best, are carried on twice as long."""
 ADDED_AT = (0.15, 0.5, 1.0, 2.0, 4.0, 10.0)
@@ -99,7 +101,7 @@ def fit_chain(
     start = minimax(b, a, np.asarray(sample_rate_hz), np.asarray(0.0), band_hz)
     task = task_of(b, a, float(sample_rate_hz), band_hz, weight_phase, weight)
     allpass = shape_of(b, a).allpass
-    best = fit_from(task, start, allpass, 0, STEPS if extra_sections else STEPS_OF_ONE)
+    best = fit_from(task, start, allpass, 0, STEPS if extra_sections or len(b) == 1 else STEPS_OF_ONE)
     by_count = [(len(best.sos), best.worst)]
     for added in range(1, extra_sections + 1):
         best = add_section(task, best, allpass, added)

@@ -79,6 +79,19 @@ def test_advice_goes_on_to_scope_and_sections_and_says_when_nothing_serves():
     assert "comes nearer" in str(nearest)
 
 
+def test_a_broken_phase_limit_is_answered_with_a_phase_weight_or_nothing(tmp_path, capsys):
+    phase = convert(design('method = "minimax"', '[limits]\nphase = "12 deg"')).judged[0]
+    remedy = phase.advice[0]
+    assert "weight_phase" in remedy.change
+    assert remedy.breaches == ()
+    assert abs(remedy.comparison.phase_deg.worst) <= 12.0
+    file = tmp_path / "quay.toml"
+    file.write_text(DESK.format(design="", limits='[limits]\nphase = "0.001 deg"'), encoding="utf-8")
+    assert main(["convert", str(file), "--out", str(tmp_path / "out")]) == 1
+    found = capsys.readouterr().err
+    assert "comes nearer" in found
+
+
 def test_fewest_sections_keep_the_limit():
     judged = convert(design('method = "minimax"\nscope = "fewest"', '[limits]\nmagnitude = "0.5 dB"')).judged[0]
     assert judged.breaches == ()
