@@ -142,8 +142,9 @@ def solve(setting: Setting) -> Exchanged:
         if len(left):
             start = _levelled_start(problem.rows(left), np.full_like(roots[left], guess), split[left])
             _keep_better(best, left, exchange(problem.rows(left), *start, ROUNDS))
-    beyond = _unsolved(best)[resonates_above(setting.rows(_unsolved(best)))]
-    rest = np.setdiff1d(_unsolved(best), beyond)
+    left = _unsolved(best)
+    above = resonates_above(setting.rows(left))
+    beyond, rest = left[above], left[~above]
     if len(rest):
         _slower_ways(setting, problem, best, rest)
     best = _between(setting, problem, f_hz, best)
@@ -164,7 +165,10 @@ def _slower_ways(setting: Setting, problem: Problem, best: Exchanged, rows: IntA
     for free in _fewer(setting):
         start = _edge_start(setting, problem.rows(rows), roots[rows], free)
         _keep_better(best, rows, exchange(problem.rows(rows), *start, ROUNDS))
-    left = np.intersect1d(rows, _unsolved(best))
+    wanted = np.zeros(len(best.worst), dtype=np.bool_)
+    wanted[rows] = True
+    unsolved = _unsolved(best)
+    left = unsolved[wanted[unsolved]]
     if len(left):
         start = descend(setting.rows(left), problem.rows(left), split[left])
         _keep_better(best, left, exchange(problem.rows(left), *start, ROUNDS))
