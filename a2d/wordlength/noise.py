@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from a2d.arrays import ComplexArray, FloatArray
+from a2d.arrays import ComplexArray, FloatArray, rising
 from a2d.digital.response import polynomial
 from a2d.wordlength.stability import margin_to_circle
 
@@ -146,5 +146,5 @@ def circle_grid(sos: FloatArray) -> tuple[FloatArray, ComplexArray]:
         angle = np.arctan2(np.sqrt(4.0 * c0[pair] * c2[pair] - c1[pair] ** 2), -c1[pair] * np.sign(c0[pair]))
         width = np.clip(np.abs(1.0 - radius), 1e-6 * angle, angle)
         angles.append((angle[:, np.newaxis] + width[:, np.newaxis] * _AROUND).ravel())
-    w = np.unique(np.clip(np.concatenate(angles), 0.0, np.pi))
+    w = rising(np.clip(np.concatenate(angles), 0.0, np.pi))
     return w, np.asarray(2.0 * np.sin(w / 2.0) ** 2 + 1j * np.sin(w))
