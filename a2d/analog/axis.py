@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
@@ -42,32 +44,41 @@ class Axis:
         """The scale's unit; empty for travel and for a switch."""
         return "" if self.control.stepped else self.moves[0].unit
 
-    def at(self, scale: float) -> list[tuple[Move, Value]]:
-        """What each path is moved to where the control stands at `scale`."""
+    @cached_property
+    def _ends(self) -> list[tuple[float, float]]:
+        """What the file says of the two ends, for each path."""
+        ends = [(move, self.control.ends(i)) for i, move in enumerate(self.moves)]
+        return [(float(read_value(move, start)), float(read_value(move, stop))) for move, (start, stop) in ends]
+
+    @cached_property
+    def _steps(self) -> list[tuple[Value, ...]]:
+        """What the file says of a switch's positions, for each path."""
+        rows = [(move, self.control.at_positions(i)) for i, move in enumerate(self.moves)]
+        return [tuple(read_value(move, value) for value in values) for move, values in rows]
+
+    def at(self, scale: float, entry: int | None = None) -> list[tuple[Move, Value]]:
+        """What each path (of one `[[section]]` entry) is moved to where the control stands at `scale`."""
+        mine = [(i, move) for i, move in enumerate(self.moves) if entry is None or move.entry == entry]
         if self.control.stepped:
-            index = round(scale)
-            return [(m, read_value(m, self.control.at_positions(i)[index])) for i, m in enumerate(self.moves)]
-        travel = self._travel(0, scale)
-        return [(move, self._value(i, travel)) for i, move in enumerate(self.moves)]
+            return [(move, self._steps[i][round(scale)]) for i, move in mine]
+        travel = self._travel(scale)
+        return [(move, self._value(i, travel)) for i, move in mine]
 
-    def _ends(self, index: int) -> tuple[float, float]:
-        start, stop = self.control.ends(index)
-        return float(read_value(self.moves[index], start)), float(read_value(self.moves[index], stop))
-
-    def _travel(self, index: int, value: float) -> float:
-        start, stop = self._ends(index)
+    def _travel(self, value: float) -> float:
+        """How far along the way the first path has `value`, 0 to 1."""
+        start, stop = self._ends[0]
         if self.control.spacing == "logarithmic":
-            return float(np.log(value / start) / np.log(stop / start))
+            return math.log(value / start) / math.log(stop / start)
         return (value - start) / (stop - start)
 
     def _value(self, index: int, travel: float) -> float:
         """The ends themselves at the ends, whatever rounding says, and never beyond them."""
-        start, stop = self._ends(index)
+        start, stop = self._ends[index]
         if self.control.spacing == "logarithmic":
             between = start * (stop / start) ** travel
         else:
             between = start + (stop - start) * travel
-        return float(np.clip(between, min(start, stop), max(start, stop)))
+        return float(min(max(between, min(start, stop)), max(start, stop)))
 
     def spaced(self, travels: ArrayLike) -> Axis:
         """The same control with its positions at `travels` [P], 0 to 1 along the way."""
@@ -127,9 +138,8 @@ class Group:
         """The entry with the controls at `scales` [K]; everything else as in the design."""
         section = design.sections[entry]
         for axis, scale in zip(self.axes, scales, strict=True):
-            for move, value in axis.at(float(scale)):
-                if move.entry == entry:
-                    section = with_value(section, move, value)
+            for move, value in axis.at(float(scale), entry):
+                section = with_value(section, move, value)
         return section
 
 

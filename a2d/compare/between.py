@@ -101,7 +101,7 @@ def between_error(
 
     def errors(scales: FloatArray) -> tuple[FloatArray, FloatArray]:
         piece = Piece(twin_at(scales), interpolate(table, knots, scales), np.arange(len(scales)))
-        found = position_errors([piece], band_hz, rate_hz, rate_hz)
+        found = position_errors([piece], band_hz, rate_hz, rate_hz, magnitude_only=True)
         return np.abs(found.worst[MAGNITUDE]), found.at_hz[MAGNITUDE]
 
     free = [i for i, s in enumerate(stepped) if not s and len(knots[i]) > 1]

@@ -16,7 +16,6 @@ from a2d.arrays import FloatArray
 from a2d.compare.between import Between, between_error
 from a2d.compare.errors import band_of
 from a2d.design.model import Design
-from a2d.digital.match import match_points
 from a2d.digital.methods import EXACT_AT_MATCH, METHODS
 from a2d.digital.refusal import SectionRefused
 from a2d.errors import ConversionError, ParameterError
@@ -61,11 +60,7 @@ def twins_of(design: Design, entry: EntrySweep, sections: Sections, rate: float)
     """
     section, band = design.sections[entry.entry], band_at(design, rate)
     name = section.method or design.design.method
-    stated = [section.match] * sections.f0_hz.shape[-1]
-    found = [entry.tracked is not None] * len(stated)
-    rows = sections.f0_hz.reshape(-1, len(stated))
-    match = np.stack([match_points(row, stated, found, (float(band[0]), float(band[1]))) for row in rows])
-    match = match.reshape(sections.f0_hz.shape)
+    match = _match(sections.f0_hz, section.match, entry.tracked is not None, float(band[1]))
     if name not in METHODS:
         raise ParameterError(f"there is no method {name!r} for a control (allowed: {', '.join(METHODS)})")
     if name in EXACT_AT_MATCH:
@@ -74,6 +69,13 @@ def twins_of(design: Design, entry: EntrySweep, sections: Sections, rate: float)
         return METHODS[name](sections.b, sections.a, np.asarray(rate), match, band)
     except SectionRefused as error:
         raise ConversionError(f'{error.reason} (section "{section.name}" along its control at {rate:g} Hz)') from error
+
+
+def _match(f0_hz: FloatArray, stated_hz: float | None, found: bool, top_hz: float) -> FloatArray:
+    """`a2d.digital.match.match_points` for the sections of one entry at many positions, [..., S]."""
+    if stated_hz is not None:
+        return np.full(f0_hz.shape, float(stated_hz))
+    return np.minimum(f0_hz, top_hz) if found else f0_hz
 
 
 class TwinsBetween:

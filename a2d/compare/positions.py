@@ -69,7 +69,12 @@ class PositionErrors:
 
 
 def position_errors(
-    pieces: Sequence[Piece], band_hz: FloatArray, rate_hz: float, reference_rate_hz: float | None = None
+    pieces: Sequence[Piece],
+    band_hz: FloatArray,
+    rate_hz: float,
+    reference_rate_hz: float | None = None,
+    *,
+    magnitude_only: bool = False,
 ) -> PositionErrors:
     """Candidate minus reference at N positions.
 
@@ -83,18 +88,23 @@ def position_errors(
         The candidates' sample rate, Hz.
     reference_rate_hz
         That of digital references; None when they are analog.
+    magnitude_only
+        Leave phase and group delay out: zeros.
     """
     rates = (reference_rate_hz, rate_hz)
     f = _common_grid(pieces, band_hz, reference_rate_hz)
-    curves = [tuple(_curves(c, f, r) for c, r in zip((p.reference, p.candidate), rates, strict=True)) for p in pieces]
+    curves = [
+        tuple(_curves(c, f, r, not magnitude_only) for c, r in zip((p.reference, p.candidate), rates, strict=True))
+        for p in pieces
+    ]
     count = len(pieces[0].index)
-    worst, at_hz = np.empty((2, 3, count))
+    worst, at_hz = np.zeros((2, 3, count))
     for rows in _blocks(count, len(f)):
         found = [_product([(c[side], p.index[rows]) for c, p in zip(curves, pieces, strict=True)]) for side in (0, 1)]
         floor = np.abs(found[0][0]).max(axis=-1, keepdims=True) * 10.0 ** (-FLOOR_DB / 20.0)
-        values = _errors(found[0], found[1], floor)
+        values = _errors(found[0], found[1], floor, magnitude_only)
         own = _Block([(p.reference[p.index[rows]], p.candidate[p.index[rows]]) for p in pieces], rates, floor)
-        for quantity in range(3):
+        for quantity in range(1 if magnitude_only else 3):
             worst[quantity, rows], at_hz[quantity, rows] = _refined(own, f, values[quantity], quantity)
     return PositionErrors(band_hz, worst, at_hz)
 
@@ -105,7 +115,7 @@ def position_levels_db(
     """Levels of analog reference and digital candidate in dB at the positions `rows` [R]; [R, F] each."""
     sides = []
     for side, rate in (("reference", None), ("candidate", rate_hz)):
-        curves = [(_curves(getattr(p, side), f_hz, rate), p.index[rows]) for p in pieces]
+        curves = [(_curves(getattr(p, side), f_hz, rate, False), p.index[rows]) for p in pieces]
         sides.append(20.0 * np.log10(np.maximum(np.abs(_product(curves)[0]), 1e-300)))
     return sides[0], sides[1]
 
@@ -118,13 +128,13 @@ class _Block:
     rates: tuple[float | None, float]
     floor: FloatArray
 
-    def errors(self, f_hz: FloatArray) -> FloatArray:
-        """The three errors [3, n, F] at frequencies [n, F] of each position's own."""
+    def errors(self, f_hz: FloatArray, quantity: int) -> FloatArray:
+        """One of the errors [n, F] at frequencies [n, F] of each position's own."""
         sides = []
         for side, rate in enumerate(self.rates):
-            each = [_curves(piece[side], f_hz, rate) for piece in self.pieces]
+            each = [_curves(piece[side], f_hz, rate, quantity == GROUP_DELAY) for piece in self.pieces]
             sides.append(_product([(curve, np.arange(len(f_hz))) for curve in each]))
-        return _errors(sides[0], sides[1], self.floor)
+        return np.asarray(_errors(sides[0], sides[1], self.floor, quantity == MAGNITUDE)[quantity])
 
 
 def _common_grid(pieces: Sequence[Piece], band_hz: FloatArray, rate_hz: float | None) -> FloatArray:
@@ -162,23 +172,24 @@ def _product(curves: list[tuple[_Curves, IntArray]]) -> _Curves:
     return h, delay
 
 
-def _curves(c: FloatArray, f_hz: FloatArray, rate_hz: float | None) -> _Curves:
-    """Response [M, F] and group delay in µs of cascades [M, S, 6]: analog ones without a rate."""
-    return _analog(c[..., :3], c[..., 3:], f_hz) if rate_hz is None else _digital(c, f_hz, rate_hz)
+def _curves(c: FloatArray, f_hz: FloatArray, rate_hz: float | None, delay: bool) -> _Curves:
+    """Response [M, F] and, where asked for, group delay in µs of cascades [M, S, 6]: analog ones without a rate."""
+    return _analog(c[..., :3], c[..., 3:], f_hz, delay) if rate_hz is None else _digital(c, f_hz, rate_hz, delay)
 
 
-def _analog(b: FloatArray, a: FloatArray, f_hz: FloatArray) -> tuple[ComplexArray, FloatArray]:
+def _analog(b: FloatArray, a: FloatArray, f_hz: FloatArray, wanted: bool) -> _Curves:
     """H(j2πf) [M, F] of `b`, `a` [M, S, 3] at `f_hz` [F] or [M, F], and the group delay in µs."""
     w = 2.0 * np.pi * f_hz
     shape = np.broadcast_shapes((len(b), 1), w.shape)
     h, delay = np.ones(shape, dtype=np.complex128), np.zeros(shape)
     for s in range(b.shape[1]):
         h *= polynomial(b[:, s], w) / polynomial(a[:, s], w)
-        delay += phase_slope(a[:, s], w) - phase_slope(b[:, s], w)
+        if wanted:
+            delay += phase_slope(a[:, s], w) - phase_slope(b[:, s], w)
     return h, 1e6 * delay
 
 
-def _digital(sos: FloatArray, f_hz: FloatArray, sample_rate_hz: float) -> tuple[ComplexArray, FloatArray]:
+def _digital(sos: FloatArray, f_hz: FloatArray, sample_rate_hz: float, wanted: bool) -> _Curves:
     """H(e^{jw}) [M, F] of `sos` [M, T, 6], and the group delay in µs.
 
     Both polynomials are turned by e^{jw}, which their ratio does not notice.
@@ -188,34 +199,40 @@ def _digital(sos: FloatArray, f_hz: FloatArray, sample_rate_hz: float) -> tuple[
     shape = np.broadcast_shapes((len(sos), 1), w.shape)
     h, delay = np.ones(shape, dtype=np.complex128), np.zeros(shape)
     for s in range(sos.shape[1]):
-        (b, slope_b), (a, slope_a) = (_turned(c, trig) for c in (sos[:, s, :3], sos[:, s, 3:]))
+        b, a = (_turned(c, trig) for c in (sos[:, s, :3], sos[:, s, 3:]))
         h *= b / a
-        delay += slope_a - slope_b
+        if wanted:
+            delay += _turned_slope(sos[:, s, 3:], a, trig) - _turned_slope(sos[:, s, :3], b, trig)
     return h, delay * (1e6 / sample_rate_hz)
 
 
-def _turned(c: FloatArray, trig: tuple[FloatArray, FloatArray, FloatArray]) -> tuple[ComplexArray, FloatArray]:
-    """e^{jw}·C(e^{jw}) = R + jX and d(arg)/dw: R = C(1) - (c0 + c2)·2·sin²(w/2), X = (c0 - c2)·sin w."""
-    squared, sine, cosine = trig
+def _turned(c: FloatArray, trig: tuple[FloatArray, FloatArray, FloatArray]) -> ComplexArray:
+    """e^{jw}·C(e^{jw}) = R + jX: R = C(1) - (c0 + c2)·2·sin²(w/2), X = (c0 - c2)·sin w."""
+    squared, sine, _ = trig
     total, plus, minus = (v[:, np.newaxis] for v in (c.sum(axis=-1), c[:, 0] + c[:, 2], c[:, 0] - c[:, 2]))
-    real, imag = total - plus * squared, minus * sine
-    value = np.empty(real.shape, dtype=np.complex128)
-    value.real, value.imag = real, imag
-    power = real * real + imag * imag
-    slope = real * (minus * cosine) + imag * (plus * sine)
-    return value, np.divide(slope, power, out=np.zeros_like(power), where=power > 0.0)
+    value = np.empty(np.broadcast_shapes(total.shape, squared.shape), dtype=np.complex128)
+    value.real, value.imag = total - plus * squared, minus * sine
+    return value
 
 
-def _errors(reference: _Curves, candidate: _Curves, floor: FloatArray) -> FloatArray:
+def _turned_slope(c: FloatArray, value: ComplexArray, trig: tuple[FloatArray, FloatArray, FloatArray]) -> FloatArray:
+    """d(arg)/dw of `_turned`."""
+    _, sine, cosine = trig
+    plus, minus = (v[:, np.newaxis] for v in (c[:, 0] + c[:, 2], c[:, 0] - c[:, 2]))
+    power = value.real**2 + value.imag**2
+    slope = value.real * (minus * cosine) + value.imag * (plus * sine)
+    return np.divide(slope, power, out=np.zeros_like(power), where=power > 0.0)
+
+
+def _errors(reference: _Curves, candidate: _Curves, floor: FloatArray, magnitude_only: bool) -> FloatArray:
     """Magnitude in dB, phase in degrees, group delay in µs, [3, n, F]; near-zero responses as in `error_curves`."""
     (h_a, delay_a), (h_d, delay_d) = reference, candidate
     size_a, size_d = np.abs(h_a), np.abs(h_d)
-    out = np.empty((3, *size_a.shape))
-    out[MAGNITUDE] = 20.0 * np.log10(np.maximum(size_d, floor) / np.maximum(size_a, floor))
-    out[PHASE] = np.degrees(np.angle(h_d * np.conj(h_a)))
-    out[GROUP_DELAY] = delay_d - delay_a
-    silent = (size_a <= floor) | (size_d <= floor)
-    out[PHASE:, silent] = 0.0
+    magnitude = 20.0 * np.log10(np.maximum(size_d, floor) / np.maximum(size_a, floor))
+    if magnitude_only:
+        return magnitude[np.newaxis]
+    out = np.stack([magnitude, np.degrees(np.angle(h_d * np.conj(h_a))), delay_d - delay_a])
+    out[PHASE:, (size_a <= floor) | (size_d <= floor)] = 0.0
     return out
 
 
@@ -229,7 +246,7 @@ def _refined(own: _Block, f: FloatArray, values: FloatArray, quantity: int) -> t
     steps = np.linspace(0.0, 1.0, _ZOOM_POINTS)
     for _ in range(_ZOOMS):
         at = low[..., np.newaxis] + (high - low)[..., np.newaxis] * steps
-        found = own.errors(at.reshape(len(at), -1))[quantity].reshape(at.shape)
+        found = own.errors(at.reshape(len(at), -1), quantity).reshape(at.shape)
         best = np.argmax(np.abs(found), axis=-1)[..., np.newaxis]
         value, where = (np.take_along_axis(x, best, -1)[..., 0] for x in (found, at))
         step = (high - low) / (_ZOOM_POINTS - 1)
