@@ -25,6 +25,7 @@ _BLOCK = 1 << 16  # values of one curve array at a time: what stays in a process
 _POINTS = 256  # over the band, logarithmic; 2.7 % apart over three decades
 _NARROW = 0.04  # a bandwidth over f0 below which a section gets points of its own
 _CLUSTER = np.concatenate([-np.geomspace(4.5, 0.05, 10), [0.0], np.geomspace(0.05, 4.5, 10)])  # half bandwidths
+_FOLDED = 150.0  # degrees
 _PEAKS, _ZOOM_POINTS, _ZOOMS = 2, 9, 4
 
 
@@ -103,6 +104,8 @@ def position_errors(
         found = [_product([(c[side], p.index[rows]) for c, p in zip(curves, pieces, strict=True)]) for side in (0, 1)]
         floor = np.abs(found[0][0]).max(axis=-1, keepdims=True) * 10.0 ** (-FLOOR_DB / 20.0)
         values = _errors(found[0], found[1], floor, magnitude_only)
+        if not magnitude_only:
+            values[PHASE] = np.unwrap(values[PHASE], period=360.0, axis=-1)
         own = _Block([(p.reference[p.index[rows]], p.candidate[p.index[rows]]) for p in pieces], rates, floor)
         for quantity in range(1 if magnitude_only else 3):
             worst[quantity, rows], at_hz[quantity, rows] = _refined(own, f, values[quantity], quantity)
@@ -244,9 +247,13 @@ def _refined(own: _Block, f: FloatArray, values: FloatArray, quantity: int) -> t
     ranked = np.argpartition(np.where(is_peak, modulus, -1.0), -_PEAKS, axis=-1)[:, -_PEAKS:]
     low, high = f[np.maximum(ranked - 1, 0)], f[np.minimum(ranked + 1, len(f) - 1)]
     steps = np.linspace(0.0, 1.0, _ZOOM_POINTS)
+    large = float(modulus.max()) > _FOLDED  # phase is known to 360 degrees alone: continued from the grid's
     for _ in range(_ZOOMS):
         at = low[..., np.newaxis] + (high - low)[..., np.newaxis] * steps
         found = own.errors(at.reshape(len(at), -1), quantity).reshape(at.shape)
+        if quantity == PHASE and large:
+            near = np.stack([np.interp(row, f, value) for row, value in zip(at, values, strict=True)])
+            found = found + 360.0 * np.round((near - found) / 360.0)
         best = np.argmax(np.abs(found), axis=-1)[..., np.newaxis]
         value, where = (np.take_along_axis(x, best, -1)[..., 0] for x in (found, at))
         step = (high - low) / (_ZOOM_POINTS - 1)

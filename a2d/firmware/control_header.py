@@ -8,6 +8,7 @@ import numpy as np
 
 from a2d.analog.axis import Axis
 from a2d.arrays import FloatArray
+from a2d.compare.between import triangle_margin
 from a2d.compare.control_tables import ControlTable, RateTable
 from a2d.compare.positions import MAGNITUDE
 from a2d.errors import RoundingError
@@ -16,9 +17,10 @@ from a2d.firmware.literals import float64_text, quoted
 from a2d.firmware.model import Header, rate_label
 from a2d.wordlength.rounding import round_nearest
 from a2d.wordlength.stability import is_stable
-from a2d.wordlength.structures import VALUE_NAMES
+from a2d.wordlength.structures import VALUE_NAMES, sos_of
 
 _A_LINE = 6  # numbers
+_ROUNDED = 2.0**-23  # half a unit in the last place of a1 below 2 and of a2 below 1, in float32, and some
 
 
 def write_control_header(header: Header, tables: tuple[ControlTable, ...]) -> str:
@@ -171,16 +173,23 @@ def _table(header: Header, table: ControlTable) -> Iterator[str]:
 def _positions(header: Header, table: ControlTable, rate: RateTable) -> Iterator[list[str]]:
     """One text a section, for each position."""
     values = rounded_values(header, rate.sos.reshape(-1, 6))
-    if not np.all(is_stable(values, header.structure)):
-        raise RoundingError(
-            f"controls of group {table.group.name} at {rate.sample_rate_hz:g} Hz: a position is unstable in "
-            f"{header.number} (choose float64, or the delta structure)"
-        )
+    _refuse_unstable(header, values, f"controls of group {table.group.name} at {rate.sample_rate_hz:g} Hz")
     sign = np.array([1.0, 1.0, 1.0, -1.0, -1.0]) if header.feedback == "negated" else np.ones(5)
     stored = (values * sign)[:, [VALUE_NAMES.index(name) for name in header.order]]
     literal = LITERALS[header.number.kind]
     for rows in stored.reshape(-1, len(table.names), 5):
         yield [f"{{ {', '.join(literal(float(v)) for v in row)} }}" for row in rows]
+
+
+def _refuse_unstable(header: Header, values: FloatArray, what: str) -> None:
+    """Every position stable, and so far inside that the rounding of what is interpolated cannot leave the triangle."""
+    rounding = _ROUNDED if header.number.kind == "float32" and header.structure != "delta" else 0.0
+    stable = np.all(is_stable(values, header.structure))
+    if not stable or np.min(triangle_margin(sos_of(values, header.structure))) <= rounding:
+        raise RoundingError(
+            f"{what}: a position, or what lies between two, is unstable in {header.number} "
+            "(choose float64, or the delta structure)"
+        )
 
 
 def rounded_values(header: Header, sos: FloatArray) -> FloatArray:

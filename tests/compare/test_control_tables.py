@@ -135,3 +135,18 @@ def test_a_switch_has_nothing_between() -> None:
 def test_positions_in_words() -> None:
     assert describe_position("lift", "dB", -4.5, False) == "lift at -4.5 dB"
     assert describe_position("bass", "", 0.25, False) == "bass at 0.25"
+
+
+def test_phase_errors_beyond_half_a_turn_are_not_folded() -> None:
+    """Four all-passes near half the rate: their twins' phase is wrong by more than 180 degrees in sum."""
+    sections = "".join(
+        f'[[section]]\nname = "a{k}"\nkind = "allpass"\nf0 = "17 kHz"\nq = 3.0\nmatch = "1 kHz"\n' for k in range(4)
+    )
+    design = parse_design(HEAD + sections + control("knob", "a0.q", 3, 3.1, "positions = 2"))
+    table = convert(design).controls[0].rates[0]
+    twin = convert_at(design, build_chain(design), 48e3).twin
+    f = np.geomspace(20.0, 20e3, 20_001)
+    ratio = twin.response(f) / build_chain(design).response(f)
+    truth = np.degrees(np.unwrap(np.angle(ratio)))
+    assert np.max(np.abs(truth)) > 400.0
+    assert abs(table.errors.worst[PHASE, 0]) == pytest.approx(np.max(np.abs(truth)), rel=1e-6)

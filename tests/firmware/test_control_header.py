@@ -15,6 +15,7 @@ from a2d.compare.between import interpolate
 from a2d.conversion import Conversion, convert
 from a2d.design.model import Design
 from a2d.design.read import parse_design
+from a2d.errors import RoundingError
 from a2d.firmware.control_header import rounded_values
 from a2d.firmware.manifest import manifest
 from a2d.wordlength.structures import VALUE_NAMES
@@ -160,3 +161,16 @@ def test_fixed_point_says_that_there_are_no_tables_in_c() -> None:
     delivery = delivery_of(conversion, HASH)
     assert "cove_controls.h" not in delivery.files
     assert any("manifest has the tables" in line for line in delivery.lines)
+
+
+def test_what_rounding_could_make_unstable_is_refused() -> None:
+    low = HEAD.replace("48 kHz", "384 kHz") + PRESENCE.replace("3.2 kHz", "4 Hz")
+    conversion = convert(parse_design(low + control("lift", "presence.gain", 3, -3, "positions = 3")))
+    with pytest.raises(RoundingError, match="choose float64, or the delta structure"):
+        delivery_of(conversion, HASH)
+
+
+def test_a_delta_table_carries_the_same_section() -> None:
+    low = HEAD.replace("48 kHz", "384 kHz") + PRESENCE.replace("3.2 kHz", "4 Hz")
+    text = low + control("lift", "presence.gain", 3, -3, "positions = 3") + '[firmware]\nstructure = "delta"\n'
+    assert "cove_controls.h" in delivery_of(convert(parse_design(text)), HASH).files
