@@ -3,27 +3,26 @@
 from __future__ import annotations
 
 import json
+import re
 from pathlib import Path
 
 import numpy as np
+import pytest
 import soundfile
 
 from a2d.cli import main
-from tests.support.paths import EXAMPLES
+from tests.support.paths import EXAMPLES, ROOT
 
 
-def test_rendered_examples_are_up_to_date(tmp_path: Path) -> None:
-    arguments = [
-        "render",
-        str(EXAMPLES / "harbour_eq.toml"),
-        "--out",
-        str(tmp_path),
-        "--signal",
-        "sweep",
-        "--rate",
-        "48000",
-    ]
-    assert main([*arguments, "--bits", "16", "--sweep-seconds", "2", "--write", "analog", "twin", "difference"]) == 0
+def the_page_s_command() -> list[str]:
+    """The words after `a2d` of the render command in audio_examples/README.md."""
+    (command,) = re.findall(r"^    a2d (render (?:.*\\\n)*.*)$", (EXAMPLES / "README.md").read_text("utf-8"), re.M)
+    return command.replace("\\\n", " ").split()
+
+
+def test_rendered_examples_are_up_to_date(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(ROOT)
+    assert main([str(tmp_path) if word == "audio_examples/rendered" else word for word in the_page_s_command()]) == 0
     shipped = sorted((EXAMPLES / "rendered").iterdir())
     assert sorted(p.name for p in tmp_path.iterdir()) == [p.name for p in shipped]
     for path in shipped:
