@@ -17,9 +17,11 @@ from a2d.arrays import FloatArray, IntArray
 from a2d.compare.positions import MAGNITUDE, Piece, position_errors
 
 TwinAt: TypeAlias = Callable[[FloatArray], FloatArray]
-_INNER = {1: (0.25, 0.5, 0.75), 2: (0.5,)}  # where each cell is sampled first, by the number of axes; then (0.5,)
-_REFINED = 6  # places that are looked at more closely
-_ZOOMS = 4
+# Where each cell is sampled first, by the number of axes; (0.5,) beyond.
+_INNER = {1: (0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9), 2: (0.5,)}
+_NEAR = 0.85  # of the largest sample: a sample's own cell has at most that much more
+_FEWEST, _MOST_CANDIDATES = 4, {1: 64, 2: 12}
+_ZOOMS = 3
 _ALLOWANCE = 1.005  # on the error found, for what the search leaves between its last points
 
 
@@ -109,16 +111,25 @@ def between_error(
         return Between(0.0, float(band_hz[0]), tuple(float(k[0]) for k in knots))
     scales = _lattice(knots, free)
     worst, at_hz = errors(scales)
-    best = np.argsort(worst)[-_REFINED:]
-    found = (float(worst[best[-1]]), float(at_hz[best[-1]]), scales[best[-1]])
+    best = _candidates(worst, len(free))
+    found = [(float(worst[k]), float(at_hz[k]), scales[k]) for k in best]
     width = 1.0 / (len(_INNER.get(len(free), (0.5,))) + 1)
     for _ in range(_ZOOMS):
-        trial = np.concatenate([_around(knots, free, scales[k], width) for k in best])
-        worst, at_hz = errors(trial)
-        k = int(np.argmax(worst))
-        found = max(found, (float(worst[k]), float(at_hz[k]), trial[k]), key=lambda row: row[0])
-        scales, best, width = trial, np.argsort(worst)[-2:], width / 4.0
-    return Between(found[0] * _ALLOWANCE, found[1], tuple(float(v) for v in found[2]))
+        trial = np.stack([_around(knots, free, point, width) for _, _, point in found])
+        worst, at_hz = (e.reshape(trial.shape[:2]) for e in errors(trial.reshape(-1, len(knots))))
+        peaks = np.argmax(worst, axis=-1)
+        rows = [(float(worst[c, k]), float(at_hz[c, k]), trial[c, k]) for c, k in enumerate(peaks)]
+        found = [max(pair, key=lambda row: row[0]) for pair in zip(found, rows, strict=True)]
+        width /= 4.0
+    most = max(found, key=lambda row: row[0])
+    return Between(most[0] * _ALLOWANCE, most[1], tuple(float(v) for v in most[2]))
+
+
+def _candidates(worst: FloatArray, axes: int) -> IntArray:
+    """The sampled points whose surroundings may hold the largest error, the largest first."""
+    ranked = np.argsort(worst)[::-1][: _MOST_CANDIDATES[min(axes, 2)]]
+    near = worst[ranked] >= _NEAR * worst[ranked[0]]
+    return np.asarray(ranked[near | (np.arange(len(ranked)) < _FEWEST)])
 
 
 def _lattice(knots: Sequence[FloatArray], free: Sequence[int]) -> FloatArray:

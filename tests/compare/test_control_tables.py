@@ -89,14 +89,19 @@ def test_every_interpolated_point_is_stable(
     assert np.min(triangle_margin(found)) >= rate.margin - 1e-15
 
 
-@pytest.mark.parametrize("design", [presence("positions = 9"), bass_alone("positions = 9")], ids=["bell", "pot"])
+@pytest.mark.parametrize(
+    "design",
+    [presence("positions = 9"), bass_alone("positions = 9"), bass_alone('error = "0.5 dB"')],
+    ids=["bell", "pot", "smallest"],
+)
 def test_a_finer_sweep_does_not_exceed_the_stated_error(design: Design) -> None:
     """50 times as many positions, each interpolated and held against the twin made for it."""
     (sweep,) = sweep_controls(design)
     rate = tabulate(design, build_chain(design), sweep).rates[0]
     (entry,) = sweep.entries
     knots = sweep.group.axes[0].knots
-    fine = np.interp(np.linspace(0.0, 8.0, 401), np.arange(9.0), knots)[:, np.newaxis]
+    last = len(knots) - 1
+    fine = np.interp(np.linspace(0.0, last, 50 * last + 1), np.arange(last + 1.0), knots)[:, np.newaxis]
     made = twins_of(design, entry, entry.at(fine), 48e3)
     drawn = interpolate(rate.sos, [knots], fine)
     f = np.geomspace(20.0, 20e3, 200)
@@ -150,3 +155,18 @@ def test_phase_errors_beyond_half_a_turn_are_not_folded() -> None:
     truth = np.degrees(np.unwrap(np.angle(ratio)))
     assert np.max(np.abs(truth)) > 400.0
     assert abs(table.errors.worst[PHASE, 0]) == pytest.approx(np.max(np.abs(truth)), rel=1e-6)
+
+
+def test_no_point_of_a_grid_exceeds_the_stated_error() -> None:
+    """A lattice five times as fine on either axis, and points at random."""
+    design = tone()
+    (sweep,) = sweep_controls(design)
+    rate = tabulate(design, build_chain(design), sweep).rates[0]
+    (entry,) = sweep.entries
+    knots = [axis.knots for axis in sweep.group.axes]
+    line = np.linspace(0.0, 1.0, 21)
+    lattice = np.stack(np.meshgrid(line, line), axis=-1).reshape(-1, 2)
+    fine = np.concatenate([lattice, np.random.default_rng(1).uniform(0.0, 1.0, (200, 2))])
+    made = chain_response(twins_of(design, entry, entry.at(fine), 48e3), F[::4], 48e3)
+    error = 20.0 * np.log10(np.abs(chain_response(interpolate(rate.sos, knots, fine), F[::4], 48e3) / made))
+    assert np.max(np.abs(error)) <= rate.between.worst_db
