@@ -18,6 +18,7 @@ from a2d.design.read import parse_design
 from a2d.errors import RoundingError
 from a2d.firmware.control_header import rounded_values
 from a2d.firmware.manifest import manifest
+from a2d.listening.moving import Change, render_moving
 from a2d.wordlength.structures import VALUE_NAMES
 from tests.support.c_build import COMPILERS, build_and_run
 from tests.support.controls import HEAD, PRESENCE, TONE, control
@@ -174,3 +175,49 @@ def test_a_delta_table_carries_the_same_section() -> None:
     low = HEAD.replace("48 kHz", "384 kHz") + PRESENCE.replace("3.2 kHz", "4 Hz")
     text = low + control("lift", "presence.gain", 3, -3, "positions = 3") + '[firmware]\nstructure = "delta"\n'
     assert "cove_controls.h" in delivery_of(convert(parse_design(text)), HASH).files
+
+
+MOVING = """
+#include <stdio.h>
+#include <string.h>
+#include "cove_controls.h"
+#include "cove_kernel.h"
+#define TOTAL 3000u
+#define BEFORE 1000u
+#define RAMP 480u
+static double in[TOTAL], out[TOTAL], rows[COVE_SECTIONS][COVE_VALUES];
+int main(void)
+{
+    static cove_filter filter;
+    cove_set moved = *cove_find(48000u);
+    if (fread(in, sizeof(*in), TOTAL, stdin) != TOTAL) return 2;
+    memcpy(rows, moved.values, sizeof(rows));
+    moved.values = (const double (*)[COVE_VALUES])rows;
+    if (!cove_lift_rows(rows, 48000u, cove_lift_to_index(7.5))) return 3;
+    cove_use(&filter, &moved);
+    cove_reset(&filter);
+    cove_process(&filter, in, out, BEFORE);
+    if (!cove_lift_rows(rows, 48000u, cove_lift_to_index(-3.3))) return 3;
+    cove_ramp(&filter, &moved, RAMP);
+    cove_process(&filter, in + BEFORE, out + BEFORE, TOTAL - BEFORE);
+    fwrite(out, sizeof(*out), TOTAL, stdout);
+    return 0;
+}
+"""
+
+
+@pytest.mark.parametrize("structure", ["direct_form_1", "transposed_direct_form_2", "delta"])
+def test_the_kernel_ramps_to_interpolated_rows_as_the_simulation_does(structure: str, tmp_path: Path) -> None:
+    """Table, interpolation, set and ramp in C, against the same in Python."""
+    _, header = written(f'[firmware]\nnumber = "float64"\nstructure = "{structure}"\n', tmp_path)
+    conversion = converted()
+    lift = conversion.controls[1]
+    samples = np.random.default_rng(8).standard_normal(3000)
+    raw = build_and_run("gcc", tmp_path / "moving.c", MOVING, stdin=samples.tobytes())
+    knots = [axis.knots for axis in lift.group.axes]
+    rows = np.tile(np.array(conversion.judged[0].twin.sos), (2, 1, 1))
+    rows[:, list(lift.places)] = interpolate(lift.rates[0].sos, knots, np.array([[7.5], [-3.3]]))
+    wanted = render_moving(rows, samples, structure, Change("ramp", 1000, 480))
+    # The kernel adds 480 steps, each rounded to 1e-16 of its value; times the sections' gain at low frequencies.
+    np.testing.assert_allclose(np.frombuffer(raw), wanted, rtol=0, atol=1e-9)
+    assert header.structure == structure
