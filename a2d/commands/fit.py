@@ -10,11 +10,11 @@ import numpy as np
 
 from a2d.analog.build import build_section
 from a2d.analog.chain import AnalogChain
-from a2d.analog.fit import Fit, fit_response
-from a2d.analog.fit_score import OrderTried
-from a2d.analog.fit_text import design_text
-from a2d.analog.fit_values import as_fitted, fit_values, without
-from a2d.analog.measured import MeasuredResponse, parse_response
+from a2d.analog.fit.fit import Fit, fit_response
+from a2d.analog.fit.measured import MeasuredResponse, parse_response
+from a2d.analog.fit.score import OrderTried
+from a2d.analog.fit.text import design_text
+from a2d.analog.fit.values import as_fitted, fit_values, without
 from a2d.commands.options import add_out
 from a2d.commands.terminal import console, hertz, table
 from a2d.design.model import Design

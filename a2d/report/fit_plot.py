@@ -8,7 +8,7 @@ import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
-from a2d.analog.fit import Fit
+from a2d.analog.fit.fit import Fit
 from a2d.arrays import FloatArray
 from a2d.report.graphics import FORMATS, settle
 from a2d.report.style import ANALOG, FAINT_INK, FILE_SHEET, drawing, frequency_axis, twin_style

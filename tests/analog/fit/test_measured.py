@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from a2d.analog.measured import parse_response
+from a2d.analog.fit.measured import parse_response
 from a2d.errors import AudioError
 
 ROWS = [(f, -0.1 * i, 3.0 * i) for i, f in enumerate(range(100, 1100, 100))]

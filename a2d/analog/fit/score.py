@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from a2d.analog.fit_solve import Model, Problem, evaluate, misfit
+from a2d.analog.fit.solve import Model, Problem, evaluate, misfit
 from a2d.arrays import FloatArray
 
 # Closer than any panel or part is known: what is left below that is not worth a section.

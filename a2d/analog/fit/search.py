@@ -8,8 +8,8 @@ from functools import lru_cache
 
 import numpy as np
 
-from a2d.analog.fit_shapes import SHAPES, atoms
-from a2d.analog.fit_solve import TINY, Model, Problem, evaluate, misfit, solve
+from a2d.analog.fit.shapes import SHAPES, atoms
+from a2d.analog.fit.solve import TINY, Model, Problem, evaluate, misfit, solve
 from a2d.analog.response import section_response
 from a2d.arrays import ComplexArray, FloatArray
 

@@ -11,12 +11,12 @@ import numpy as np
 
 from a2d import checks
 from a2d.analog.chain import AnalogChain
-from a2d.analog.fit_order import FIRST_ORDER, all_at_once, level_first
-from a2d.analog.fit_score import NEPER_DB, OrderTried, explained, octave_weights, tried
-from a2d.analog.fit_search import Effort
-from a2d.analog.fit_shapes import FREE, SEARCHED, SHAPES, TWINS
-from a2d.analog.fit_solve import Model, Problem, evaluate, misfit
-from a2d.analog.measured import MeasuredResponse
+from a2d.analog.fit.measured import MeasuredResponse
+from a2d.analog.fit.order import FIRST_ORDER, all_at_once, level_first
+from a2d.analog.fit.score import NEPER_DB, OrderTried, explained, octave_weights, tried
+from a2d.analog.fit.search import Effort
+from a2d.analog.fit.shapes import FREE, SEARCHED, SHAPES, TWINS
+from a2d.analog.fit.solve import Model, Problem, evaluate, misfit
 from a2d.arrays import FloatArray
 from a2d.errors import AudioError
 
@@ -34,7 +34,7 @@ class FittedSection:
     Parameters
     ----------
     shape
-        A name in `fit_shapes.SHAPES`.
+        A name in `a2d.analog.fit.shapes.SHAPES`.
     values
         f0 in Hz, q, gain in dB and so on, by name.
     """
@@ -110,7 +110,7 @@ def fit_response(
     most_sections
         Where the order sweep ends at the latest.
     shapes
-        Names in `fit_shapes.SHAPES`; all that the data can tell apart when absent.
+        Names in `a2d.analog.fit.shapes.SHAPES`; all that the data can tell apart when absent.
     coupling
         Whether a coupling corner below the band is a nuisance term.
 

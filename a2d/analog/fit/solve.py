@@ -11,8 +11,8 @@ from functools import lru_cache
 
 import numpy as np
 
-from a2d.analog.fit_shapes import SHAPES, limits
-from a2d.analog.measured import MeasuredResponse
+from a2d.analog.fit.measured import MeasuredResponse
+from a2d.analog.fit.shapes import SHAPES, limits
 from a2d.analog.response import section_response
 from a2d.arrays import BoolArray, ComplexArray, FloatArray
 

@@ -9,13 +9,13 @@ from dataclasses import replace
 import numpy as np
 
 from a2d.analog.chain import AnalogChain
-from a2d.analog.fit import Fit, FittedSection, finished, vector_of
-from a2d.analog.fit_order import first_model
-from a2d.analog.fit_score import octave_weights, reweighted, tried
-from a2d.analog.fit_shapes import SHAPES
-from a2d.analog.fit_solve import NUISANCE, Model, Problem, bounds, solve
+from a2d.analog.fit.fit import Fit, FittedSection, finished, vector_of
+from a2d.analog.fit.measured import MeasuredResponse
+from a2d.analog.fit.order import first_model
+from a2d.analog.fit.score import octave_weights, reweighted, tried
+from a2d.analog.fit.shapes import SHAPES
+from a2d.analog.fit.solve import NUISANCE, Model, Problem, bounds, solve
 from a2d.analog.kinds import peaking_w3c_q
-from a2d.analog.measured import MeasuredResponse
 from a2d.arrays import FloatArray
 from a2d.design import kinds
 from a2d.design.section import Section

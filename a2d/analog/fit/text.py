@@ -5,8 +5,8 @@ from __future__ import annotations
 import json
 from collections.abc import Callable, Sequence
 
-from a2d.analog.fit import Fit, FittedSection
-from a2d.analog.fit_shapes import SHAPES
+from a2d.analog.fit.fit import Fit, FittedSection
+from a2d.analog.fit.shapes import SHAPES
 
 
 def design_text(

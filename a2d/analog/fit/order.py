@@ -9,11 +9,11 @@ from itertools import combinations
 
 import numpy as np
 
-from a2d.analog.fit_score import OrderTried, exact, explained, reweighted, tried
-from a2d.analog.fit_search import Effort, with_one_more
-from a2d.analog.fit_shapes import FREE, SHAPES
-from a2d.analog.fit_solve import Model, Problem, empty_model, evaluate, misfit, solve
-from a2d.analog.measured import MeasuredResponse
+from a2d.analog.fit.measured import MeasuredResponse
+from a2d.analog.fit.score import OrderTried, exact, explained, reweighted, tried
+from a2d.analog.fit.search import Effort, with_one_more
+from a2d.analog.fit.shapes import FREE, SHAPES
+from a2d.analog.fit.solve import Model, Problem, empty_model, evaluate, misfit, solve
 from a2d.arrays import FloatArray
 
 NEEDED_GAIN = 6.0  # of the information criterion: a section that explains less is noise

@@ -10,10 +10,10 @@ import pytest
 
 from a2d.analog.build import build_chain
 from a2d.analog.chain import AnalogChain
-from a2d.analog.fit import Fit, FittedSection, fit_response
-from a2d.analog.fit_text import design_text
-from a2d.analog.fit_values import as_fitted, fit_values
-from a2d.analog.measured import MeasuredResponse
+from a2d.analog.fit.fit import Fit, FittedSection, fit_response
+from a2d.analog.fit.measured import MeasuredResponse
+from a2d.analog.fit.text import design_text
+from a2d.analog.fit.values import as_fitted, fit_values
 from a2d.design.read import read_design
 from a2d.errors import AudioError
 from tests.support.chains import chain_of, highpass, lowpass, peaking
