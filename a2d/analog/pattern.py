@@ -8,15 +8,16 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from a2d.analog.network.roots import ZeroPole
+from a2d.analog.placing import Placing, pairings
 from a2d.analog.response import section_response
-from a2d.analog.tracking import distances, exchanged
+from a2d.analog.tracking import distances
 from a2d.arrays import BoolArray, ComplexArray, FloatArray, IntArray
-from a2d.errors import ParameterError
 
 _SAME = 1e-9  # relative distance below which a pole and a zero cancel, as for a single network
 _LEVEL_HZ = np.geomspace(2.0, 200e3, 41)  # where sections are levelled and the gain is taken
-_NARROW = np.sin(0.15)  # of |root|: 0.1 dB, see `settled`
-_NEVER = 1e6  # the cost of what must not be, far above any squared distance
+_NARROW = np.sin(0.25)  # of |root|: 0.27 dB, see `settled`
+_MOST_ALONE = 6  # real poles that are paired in every way there is
+_WIDTH = 0.05  # what the distance between a section's poles counts beside that of its zeros
 
 
 @dataclass(frozen=True, eq=False)
@@ -55,19 +56,15 @@ class Pattern:
 def pattern_of(roots: Roots, first: int) -> Pattern:
     """The sections that serve all positions.
 
-    Conjugates share a section wherever they are complex; real poles that never pair stand in twos in the order of
-    their size at position `first`; zeros go to the nearest poles, by the sum over all positions, and never to a
-    section that has fewer poles at some position.
-
-    Raises
-    ------
-    ParameterError
-        No arrangement has as many poles as zeros in each section at every position.
+    Conjugates share a section wherever they are complex; real poles that never pair stand in twos, and zeros go to the
+    nearest poles, by the sum over all positions, so that no section has more zeros than poles anywhere if that can be
+    had. Sections run in the order of their poles at position `first`.
     """
-    kept = _kept(roots)
-    groups = _pole_groups(roots, kept[0], first)
-    zeros = _zero_groups(roots, groups, kept[1])
-    return Pattern(groups, zeros)
+    poles, zeros = _kept(roots)
+    trials = [(groups, *_zero_groups(roots, groups, zeros)) for groups in _pole_groups(roots, poles, first)]
+    costs = [cost + _WIDTH * _widths(roots, groups) for groups, _, cost in trials]
+    groups, own, _ = trials[int(np.argmin(costs))]
+    return Pattern(groups, own)
 
 
 def _kept(roots: Roots) -> tuple[list[int], list[int]]:
@@ -99,32 +96,45 @@ def _partners(rows: ComplexArray) -> dict[int, int]:
     return partner
 
 
-def _pole_groups(roots: Roots, kept: Iterable[int], first: int) -> tuple[tuple[int, ...], ...]:
+def _pole_groups(roots: Roots, kept: Iterable[int], first: int) -> list[tuple[tuple[int, ...], ...]]:
+    """The ways to share out the poles: couples as they are, the others in any twos while they are few."""
     partner = _partners(roots.poles)
     pairs = [(k, partner[k]) for k in kept if k in partner and k < partner[k]]
     size = np.where(np.isfinite(roots.poles[first]), np.abs(roots.poles[first]), np.inf)
     alone = sorted((k for k in kept if k not in partner), key=lambda k: float(size[k]))
-    groups = pairs + [tuple(alone[i : i + 2]) for i in range(0, len(alone), 2)]
-    return tuple(sorted(groups, key=lambda g: float(np.min(size[list(g)])))) or ((),)
+    by_size = tuple(tuple(alone[i : i + 2]) for i in range(0, len(alone), 2))
+    ways = pairings(alone) if len(alone) <= _MOST_ALONE else [by_size]
+    return [tuple(sorted((*pairs, *w), key=lambda g: float(np.min(size[list(g)])))) or ((),) for w in ways]
 
 
-def _zero_groups(roots: Roots, groups: tuple[tuple[int, ...], ...], kept: list[int]) -> tuple[tuple[int, ...], ...]:
-    """One place a pole; zeros that pair are kept on places of one section, by exchanging until nothing is gained."""
-    owner = [g for g, group in enumerate(groups) for _ in group]
-    n = len(owner)
-    cost = _place_costs(roots, groups, kept)[:, owner]
+def _widths(roots: Roots, groups: tuple[tuple[int, ...], ...]) -> float:
+    """How far apart the poles of each section are, squared, averaged over the positions."""
+    total = 0.0
+    for group in groups:
+        for row in roots.poles[:, list(group)] if len(group) == 2 else ():
+            total += float(distances(row[:1], row[1:], roots.reference_rad_s)[0, 0]) ** 2
+    return total / len(roots.gain)
+
+
+def _zero_groups(
+    roots: Roots, groups: tuple[tuple[int, ...], ...], kept: list[int]
+) -> tuple[tuple[tuple[int, ...], ...], float]:
+    """One place a pole; the zeros of each section, and what that costs."""
+    owner = np.array([g for g, group in enumerate(groups) for _ in group], dtype=np.int64)
     partner = _partners(roots.zeros)
     couples = [(kept.index(k), kept.index(j)) for k, j in partner.items() if k < j and k in kept and j in kept]
-    taken = exchanged(cost) if n else np.zeros(0, dtype=np.int64)
-    taken = _with_couples(cost, taken, couples, np.array(owner, dtype=np.int64))
-    if n and float(cost[np.arange(n), taken].max()) >= _NEVER:
-        raise ParameterError(
-            "no order of sections has as many poles as zeros in each at every position (split the control into two)"
-        )
+    cost = _place_costs(roots, groups, kept)[:, owner]
+    finite = np.isfinite(roots.zeros[:, kept])
+    taken, total = Placing(cost, owner, couples, finite, _capacity(roots.poles, groups)).best()
     own: list[list[int]] = [[] for _ in groups]
     for row, place in enumerate(taken):
-        own[owner[int(place)]].append(kept[row])
-    return tuple(tuple(z) for z in own)
+        own[int(owner[int(place)])].append(kept[row])
+    return tuple(tuple(z) for z in own), total
+
+
+def _capacity(poles: ComplexArray, groups: tuple[tuple[int, ...], ...]) -> IntArray:
+    """How many finite poles each section has at each position, [N, sections]."""
+    return np.stack([np.isfinite(poles[:, list(group)]).sum(axis=-1) for group in groups], axis=-1)
 
 
 def _place_costs(roots: Roots, groups: tuple[tuple[int, ...], ...], kept: list[int]) -> FloatArray:
@@ -134,34 +144,7 @@ def _place_costs(roots: Roots, groups: tuple[tuple[int, ...], ...], kept: list[i
         for zeros, poles in zip(roots.zeros[:, kept], roots.poles[:, list(group)], strict=True):
             if len(group) and len(kept):
                 cost[:, g] += np.min(distances(zeros, poles, roots.reference_rad_s), axis=1) ** 2
-        finite_poles = np.isfinite(roots.poles[:, list(group)]).sum(axis=1)
-        never = np.isfinite(roots.zeros[:, kept]) & (finite_poles == 0)[:, np.newaxis]
-        cost[:, g] = cost[:, g] / len(roots.gain) + np.where(never.any(axis=0), 2.0 * _NEVER, 0.0)
-    return cost
-
-
-def _with_couples(cost: FloatArray, taken: IntArray, couples: list[tuple[int, int]], owner: IntArray) -> IntArray:
-    """Exchange places until each couple of zeros stands in one section."""
-    rows = np.arange(len(taken))
-
-    def total(places: IntArray) -> float:
-        apart = sum(owner[places[i]] != owner[places[j]] for i, j in couples)
-        return float(cost[rows, places].sum() + 1e3 * apart)
-
-    best = total(taken)
-    for _ in range(len(taken) ** 2 if couples else 0):
-        trials = [_swapped(taken, i, j) for i in range(len(taken)) for j in range(i)]
-        found = min(trials, key=total)
-        if total(found) >= best - 1e-9:
-            break
-        taken, best = found, total(found)
-    return taken
-
-
-def _swapped(places: IntArray, i: int, j: int) -> IntArray:
-    changed = places.copy()
-    changed[i], changed[j] = places[j], places[i]
-    return changed
+    return cost / len(roots.gain)
 
 
 def settled(roots: Roots, pattern: Pattern, *, exact: bool) -> tuple[Roots, BoolArray]:
@@ -173,28 +156,78 @@ def settled(roots: Roots, pattern: Pattern, *, exact: bool) -> tuple[Roots, Bool
     same modulus, which changes |H| by 20·lg(cos φ) dB at most and keeps the order continuous. Couples of a larger
     angle, and all with `exact`, exchange numbers with others, which breaks the order at the edge of that region.
     """
-    poles, moved_poles = _settled(roots.poles, pattern.poles, roots.reference_rad_s, exact)
-    zeros, moved_zeros = _settled(roots.zeros, pattern.zeros, roots.reference_rad_s, exact)
-    return replace(roots, poles=poles, zeros=zeros), moved_poles | moved_zeros
-
-
-def _settled(
-    rows: ComplexArray, groups: tuple[tuple[int, ...], ...], reference_rad_s: float, exact: bool
-) -> tuple[ComplexArray, BoolArray]:
-    kept = np.array([k for group in groups for k in group], dtype=np.int64)
-    owner = np.array([g for g, group in enumerate(groups) for _ in group], dtype=np.int64)
-    out, moved = rows.copy(), np.zeros(len(rows), dtype=np.bool_)
-    for n, row in enumerate(rows[:, kept]):
-        astride = [(i, j) for i, j in _couples(row) if owner[i] != owner[j]]
-        narrow = [] if exact else [c for c in astride if abs(row[c[0]].imag) <= _NARROW * abs(row[c[0]])]
-        if len(narrow) < len(astride):
-            cost = distances(row, row, reference_rad_s)
-            out[n, kept[_with_couples(cost, np.arange(len(kept)), _couples(row), owner)]] = row
+    sides = [(roots.poles, pattern.poles), (roots.zeros, pattern.zeros)]
+    (poles, zeros), reference = (rows.copy() for rows, _ in sides), roots.reference_rad_s
+    moved = np.zeros(len(roots.gain), dtype=np.bool_)
+    capacity = _capacity(poles, pattern.poles)
+    for n in range(len(roots.gain)):
+        both = [_Astride.of(rows[n], groups) for rows, groups in sides]
+        held = np.bincount(both[1].owner[np.isfinite(zeros[n, both[1].kept])], minlength=len(pattern.poles))
+        wide = any(exact or not side.narrow for side in both if side.couples)
+        if wide or np.any(held > capacity[n]):
+            poles[n, both[0].kept], zeros[n, both[1].kept] = _rearranged(both[0], both[1], reference)
             moved[n] = True
         else:
-            for i, j in narrow:
-                out[n, kept[[i, j]]] = np.copysign(abs(row[i]), row[i].real)
-    return out, moved
+            poles[n], zeros[n] = (side.straightened(rows[n]) for side, (rows, _) in zip(both, sides, strict=True))
+    return replace(roots, poles=poles, zeros=zeros), moved
+
+
+@dataclass(frozen=True, eq=False)
+class _Astride:
+    """One position's poles or zeros, and the couples that stand in two sections.
+
+    Attributes
+    ----------
+    kept, owner
+        Shape [n]: the numbers in the sections' order, and the section of each.
+    row
+        Shape [n]: the roots in that order.
+    couples
+        Places of the couples astride.
+    """
+
+    kept: IntArray
+    owner: IntArray
+    row: ComplexArray
+    couples: list[tuple[int, int]]
+
+    @classmethod
+    def of(cls, row: ComplexArray, groups: tuple[tuple[int, ...], ...]) -> _Astride:
+        kept = np.array([k for group in groups for k in group], dtype=np.int64)
+        owner = np.array([g for g, group in enumerate(groups) for _ in group], dtype=np.int64)
+        return cls(kept, owner, row[kept], [(i, j) for i, j in _couples(row[kept]) if owner[i] != owner[j]])
+
+    @property
+    def narrow(self) -> bool:
+        """Whether all of them lie so near to the axis that two real roots may stand for them."""
+        return all(abs(self.row[i].imag) <= _NARROW * abs(self.row[i]) for i, _ in self.couples)
+
+    def straightened(self, row: ComplexArray) -> ComplexArray:
+        """The whole position's roots with such couples replaced by two real ones of the same modulus."""
+        out = row.copy()
+        for i, j in self.couples:
+            out[self.kept[[i, j]]] = np.copysign(abs(self.row[i]), self.row[i].real)
+        return out
+
+
+def _rearranged(poles: _Astride, zeros: _Astride, reference_rad_s: float) -> tuple[ComplexArray, ComplexArray]:
+    """Poles and zeros of one position on the places that cost least: no couple apart, no section improper."""
+    count = int(poles.owner.max(initial=0)) + 1
+    pole_cost, zero_cost = (distances(side.row, side.row, reference_rad_s) for side in (poles, zeros))
+    finite_poles, finite_zeros = (np.isfinite(side.row) for side in (poles, zeros))
+    everywhere = np.full((1, count), len(poles.row))
+    ways = Placing(pole_cost, poles.owner, _couples(poles.row), finite_poles[np.newaxis], everywhere).distinct()
+    best: tuple[float, ComplexArray, ComplexArray] | None = None
+    for places, cost in ways:
+        capacity = np.bincount(poles.owner[places[finite_poles]], minlength=count)[np.newaxis]
+        placing = Placing(zero_cost, zeros.owner, _couples(zeros.row), finite_zeros[np.newaxis], capacity)
+        own, total = placing.best(np.arange(len(zeros.row)))
+        if best is None or cost + total < best[0]:
+            new_poles, new_zeros = poles.row.copy(), zeros.row.copy()
+            new_poles[places], new_zeros[own] = poles.row, zeros.row
+            best = (cost + total, new_poles, new_zeros)
+    assert best is not None  # the order as it stands is one of the ways
+    return best[1], best[2]
 
 
 def _couples(row: ComplexArray) -> list[tuple[int, int]]:
@@ -203,8 +236,10 @@ def _couples(row: ComplexArray) -> list[tuple[int, int]]:
     return [(int(i), int(np.argmin(np.abs(row - np.conj(row[i]))))) for i in upper]
 
 
-def sections_from(roots: Roots, pattern: Pattern, exact: Roots) -> tuple[FloatArray, FloatArray]:
-    """b, a [N, S, 3] (coefficients of s², s, 1) of each position; they are continuous where the roots are.
+def sections_from(roots: Roots, pattern: Pattern, exact: Roots) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """b, a [N, S, 3] (coefficients of s², s, 1) of each position, continuous where the roots are, and their error.
+
+    The error is the largest difference from `exact` over its largest response, [N].
 
     Each root's factor is (|r| - e^{-jφ}·s)/sqrt(|r|² + w²), which stays finite at zero and infinity. Sections after the
     first have a mean square response of 1, and the first has the gain that the whole needs to be
@@ -219,7 +254,8 @@ def sections_from(roots: Roots, pattern: Pattern, exact: Roots) -> tuple[FloatAr
     wanted = exact.response(_LEVEL_HZ)
     gain = np.sum((np.conj(product) * wanted).real, axis=-1) / np.sum(np.abs(product) ** 2, axis=-1)
     b[:, 0] *= gain[:, np.newaxis]
-    return b, a
+    off = np.abs(product * gain[:, np.newaxis] - wanted).max(axis=-1) / np.abs(wanted).max(axis=-1)
+    return b, a, off
 
 
 def _product(roots: ComplexArray, reference_rad_s: float) -> FloatArray:

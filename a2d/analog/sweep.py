@@ -27,6 +27,7 @@ from a2d.errors import A2dError, ParameterError
 
 _DAMPED = 1e-9  # of |pole|: less damping than this is none
 _HIGHEST_MATCH_HZ = 1e6
+_EXACT = 1e-8  # of the largest response, as for a network by itself
 _LATTICE = {0: 1, 1: 25, 2: 13}  # lattice positions of an axis by the number of axes; 5 beyond
 
 
@@ -78,7 +79,12 @@ class Tracked:
 
     def sections(self, roots: Roots, *, exact: bool) -> Sections:
         """Sections [N, S, 3] of numbered roots; those of the table are not `exact` where roots cross (`settled`)."""
-        b, a = sections_from(settled(roots, self.pattern, exact=exact)[0], self.pattern, roots)
+        b, a, off = sections_from(settled(roots, self.pattern, exact=exact)[0], self.pattern, roots)
+        if exact and np.any(off > _EXACT):
+            raise ParameterError(
+                f"the sections of a position do not agree with the circuit ({float(off.max()):.1e}, allowed "
+                f"{_EXACT:g}): no arrangement in second-order sections was found; split the network"
+            )
         return Sections(b, a, np.broadcast_to(self.f0_hz, b.shape[:-1]))
 
 
@@ -178,10 +184,7 @@ def _track(design: Design, group: Group, entry: int) -> Tracked:
             expected = rows[before] if earlier is None else continued(rows[earlier], rows[before])
             rows[here] = numbered(expected, rows[here], reference)
     roots = Roots(np.array(zeros), np.array(poles), np.array([r.gain for r in found]), reference)
-    try:
-        pattern = pattern_of(roots, len(scales))
-    except ParameterError as error:
-        raise ParameterError(f'control "{group.name}", section "{design.sections[entry].name}": {error}') from error
+    pattern = pattern_of(roots, len(scales))
     return Tracked(axes, roots, pattern, _match_points(roots, pattern))
 
 
@@ -217,7 +220,7 @@ def _corners(axes: tuple[Axis, ...], shape: tuple[int, ...], scale: FloatArray) 
 
 def _match_points(roots: Roots, pattern: Pattern) -> FloatArray:
     """Each section's natural frequency at the design's own setting; where that is infinite, the lowest of the sweep."""
-    b, a = sections_from(settled(roots, pattern, exact=True)[0], pattern, roots)
+    b, a, _ = sections_from(settled(roots, pattern, exact=True)[0], pattern, roots)
     with np.errstate(divide="ignore", invalid="ignore"):
         f0 = natural_frequency_hz(b, a)
     usable = np.where(np.isfinite(f0) & (f0 < _HIGHEST_MATCH_HZ), f0, np.inf)

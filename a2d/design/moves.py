@@ -96,7 +96,7 @@ def _below(here: Any) -> dict[str, tuple[list[str], Any]]:
     if isinstance(here, dict):
         found = {key: ([key], value) for key, value in here.items()}
     elif isinstance(here, tuple):
-        found = {item.name: ([item.name], item) for item in here if hasattr(item, "name")}
+        found = {name: ([name], item) for name, item in _named(here).items()}
     elif isinstance(here, msgspec.Struct):
         for field in here.__struct_fields__:
             value = getattr(here, field)
@@ -104,6 +104,11 @@ def _below(here: Any) -> dict[str, tuple[list[str], Any]]:
             if field in ("network", "parts", "band"):
                 found |= {key: ([field, *keys], item) for key, (keys, item) in _below(value).items()}
     return found
+
+
+def _named(items: tuple[Any, ...]) -> dict[str, Any]:
+    """The tables of a list by their names; those without one are `1`, `2`, ..."""
+    return {str(getattr(item, "name", k + 1)): item for k, item in enumerate(items)}
 
 
 def _move(section: Section, path: str, entry: int, keys: tuple[str, ...]) -> Move:
@@ -124,7 +129,7 @@ def _get(holder: Any, key: str) -> Any:
     if isinstance(holder, dict):
         return holder[key]
     if isinstance(holder, tuple):
-        return next(item for item in holder if item.name == key)
+        return _named(holder)[key]
     return getattr(holder, key)
 
 
@@ -167,7 +172,7 @@ def _set(holder: Any, keys: tuple[str, ...], value: object) -> Any:
     if isinstance(holder, dict):
         return {**holder, keys[0]: inner}
     if isinstance(holder, tuple):
-        return tuple(inner if item.name == keys[0] else item for item in holder)
+        return tuple(inner if name == keys[0] else item for name, item in _named(holder).items())
     return msgspec.structs.replace(holder, **{keys[0]: inner})
 
 

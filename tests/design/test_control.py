@@ -11,6 +11,19 @@ from tests.support.controls import HEAD, PRESENCE, TONE, control
 
 CIRCUIT = """
 [[section]]
+name = "mids"
+circuit = "simulated_inductor_bands"
+[section.parts]
+R1 = "3k3"
+R2 = "3k3"
+[[section.parts.band]]
+P1 = "10k"
+position = 0.3
+C1 = "1u"
+R1 = "470"
+R2 = "68k"
+C2 = "8n2"
+[[section]]
 name = "body"
 circuit = "multiple_feedback_bandpass"
 parts = { R1 = "8k2", R2 = "1k5", R3 = "82k", C1 = "15n", C2 = "15n" }
@@ -36,6 +49,7 @@ mix = "3 dB"
         ("tone.C1", 22e-9, "F"),
         ("body.R2", 1500.0, "Ω"),
         ("room.b63.f0", 63.0, "Hz"),
+        ("mids.band.1.position", 0.3, ""),
     ],
 )
 def test_paths(path: str, now: float, unit: str) -> None:
