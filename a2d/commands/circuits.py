@@ -14,6 +14,7 @@ from a2d.commands.terminal import hertz
 from a2d.conversion import Conversion, Judged
 from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
 from a2d.design.section import Section
+from a2d.digital.methods import EXACT_AT_MATCH
 
 
 def circuit_notes(conversion: Conversion) -> list[str]:
@@ -69,7 +70,7 @@ def _change(change: Change) -> str:
 
 
 def _moved(conversion: Conversion) -> list[str]:
-    """Sections whose own f0 lies above the band and that were matched at its end, one line a rate."""
+    """Sections whose own f0 lies above the band and whose method is exact at its end instead, one line a rate."""
     lines = []
     for judged in conversion.judged:
         names = _above_band(conversion, judged)
@@ -86,5 +87,6 @@ def _above_band(conversion: Conversion, judged: Judged) -> list[str]:
     if len(judged.twin) != len(chain):
         return []
     stated = [conversion.design.sections[owner].match is not None for owner in chain.owners]
-    above = [_is_hardware(conversion, i) and not stated[i] and chain.f0_hz[i] > top for i in range(len(chain))]
+    exact = [method in EXACT_AT_MATCH and not there for method, there in zip(judged.twin.methods, stated, strict=True)]
+    above = [_is_hardware(conversion, i) and exact[i] and chain.f0_hz[i] > top for i in range(len(chain))]
     return [f"{chain.names[i]} ({hertz(float(chain.f0_hz[i]))})" for i in range(len(chain)) if above[i]]

@@ -76,7 +76,7 @@ def deliver(
     )
     rounded = tuple(rounded_twin(twin, proof) for twin, proof in zip(plan.twins, proofs, strict=True))
     comparisons = tuple(compare(chain, twin, band) for twin, band in zip(rounded, bands_hz, strict=True))
-    header = _header(design, sha256, plan, rounded, proofs, comparisons)
+    header = _header(design, sha256, plan, natural_frequencies(chain, rounded[0]), rounded, proofs, comparisons)
     arithmetic = arithmetic_of(header, firmware.overflow, firmware.sample_rounding)
     warnings = (words.warning(twin, proof, plan) for twin, proof in zip(plan.twins, proofs, strict=True))
     return Delivery(
@@ -116,6 +116,7 @@ def _header(
     design: Design,
     sha256: str,
     plan: Plan,
+    f0_hz: tuple[float, ...],
     twins: tuple[Twin, ...],
     proofs: tuple[Proof, ...],
     comparisons: tuple[Comparison, ...],
@@ -126,7 +127,7 @@ def _header(
         title=design.design.title,
         sha256=sha256,
         section_names=twins[0].names,
-        f0_hz=tuple(float(f) for f in twins[0].match_hz),
+        f0_hz=f0_hz,
         number=plan.number,
         tables=tuple(_table(t, p, c) for t, p, c in zip(twins, proofs, comparisons, strict=True)),
         structure=plan.structure,
@@ -136,6 +137,23 @@ def _header(
         sample_bits=firmware.sample_word.bits if fixed else 0,
         sample_fraction=firmware.sample_word.fraction_bits if fixed else 0,
     )
+
+
+def natural_frequencies(chain: AnalogChain, twin: Twin) -> tuple[float, ...]:
+    """Each section's f0 in Hz: that of its analog original, or its own where it has none (fitted sections).
+
+    The match frequency will not do: a section may be exact elsewhere than at its f0.
+    """
+    return tuple(
+        _natural_frequency(chain, name, float(own)) for name, own in zip(twin.names, twin.match_hz, strict=True)
+    )
+
+
+def _natural_frequency(chain: AnalogChain, name: str, own_hz: float) -> float:
+    for original, f0 in zip(chain.names, chain.f0_hz, strict=True):
+        if name == original or name.startswith(f"poles of {original}, zeros of "):
+            return float(f0)
+    return own_hz
 
 
 def _table(twin: Twin, proof: Proof, comparison: Comparison) -> Table:

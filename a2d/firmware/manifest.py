@@ -9,6 +9,7 @@ from a2d.compare.banks import JudgedBank, parallel_banks
 from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion, Judged
 from a2d.digital.certificate import Certificate
+from a2d.digital.methods import EXACT_AT_MATCH
 from a2d.firmware.control_manifest import control_tables
 from a2d.version import VERSION
 
@@ -56,7 +57,7 @@ def _twin(judged: Judged) -> dict[str, Any]:
     return {
         "sample_rate_hz": float(twin.sample_rate_hz),
         "sections": [
-            {"name": name, "method": method, "match_hz": float(match), "sos": row.tolist()}
+            {"name": name, "method": method, "match_hz": _exact_at(method, match), "sos": row.tolist()}
             | ({"why": twin.why[i]} if twin.why and twin.why[i] else {})
             | (_certificate(judged.proofs[i]) if judged.proofs else {})
             for i, (name, method, match, row) in enumerate(
@@ -69,6 +70,11 @@ def _twin(judged: Judged) -> dict[str, Any]:
         "broken_limits": [str(breach) for breach in judged.breaches],
         "advice": [str(remedy) for remedy in judged.advice],
     }
+
+
+def _exact_at(method: str, match_hz: float) -> float | None:
+    """Where a section is exact; None for a method that is exact nowhere in particular."""
+    return float(match_hz) if method in EXACT_AT_MATCH else None
 
 
 def _bank(judged: JudgedBank) -> dict[str, Any]:
@@ -125,12 +131,16 @@ def _worst(worst: Worst) -> dict[str, float]:
 
 
 def sos_table(conversion: Conversion) -> str:
-    """NAME.sos.csv: a row a section and rate; y = b0·x + b1·x1 + b2·x2 - a1·y1 - a2·y2."""
+    """NAME.sos.csv: a row a section and rate; y = b0·x + b1·x1 + b2·x2 - a1·y1 - a2·y2.
+
+    `match_hz` is empty where the method is exact at no stated frequency.
+    """
     lines = ["sample_rate_hz,section,method,match_hz,b0,b1,b2,a0,a1,a2"]
     for judged in conversion.judged:
         twin = judged.twin
         for name, method, match, row in zip(twin.names, twin.methods, twin.match_hz, twin.sos, strict=True):
-            numbers = [repr(float(v)) for v in (match, *row)]
+            exact_at = _exact_at(method, match)
+            numbers = ["" if exact_at is None else repr(exact_at), *(repr(float(v)) for v in row)]
             quoted = '"' + name.replace('"', '""') + '"'
             lines.append(",".join([repr(float(twin.sample_rate_hz)), quoted, method, *numbers]))
     return "\n".join(lines) + "\n"

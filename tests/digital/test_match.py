@@ -1,5 +1,7 @@
 """Match points of sections that were found from circuits."""
 
+import json
+
 import numpy as np
 import pytest
 
@@ -57,3 +59,17 @@ def test_the_output_says_so(capsys, tmp_path):
 def test_a_stated_match_is_kept_and_one_that_cannot_be_is_an_error():
     stated = DESIGN.replace('name = "output"', 'name = "output"\nmatch = "12 kHz"')
     assert convert(parse_design(stated)).judged[0].twin.match_hz == pytest.approx([12e3])
+
+
+def test_a_method_that_is_exact_nowhere_claims_no_match_frequency(capsys, tmp_path):
+    from a2d.cli import main
+
+    path = tmp_path / "stage.toml"
+    path.write_text(DESIGN.replace("[[section]]", 'method = "minimax"\n[[section]]', 1))
+    assert main(["convert", str(path), "--out", str(tmp_path)]) == 0
+    assert "exact at the band's upper end" not in " ".join(capsys.readouterr().out.split())
+    name = next(tmp_path.glob("*.twin.json")).name.removesuffix(".twin.json")
+    twins = json.loads((tmp_path / f"{name}.twin.json").read_text())["twins"]
+    assert [section["match_hz"] for twin in twins for section in twin["sections"]] == [None, None]
+    assert ",minimax,," in (tmp_path / f"{name}.sos.csv").read_text()
+    assert "f0 338627" in (tmp_path / f"{name}.h").read_text()

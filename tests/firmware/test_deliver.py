@@ -65,6 +65,18 @@ def test_float32_header_holds_the_twins() -> None:
     assert made.breaches == ((), ())
 
 
+@pytest.mark.parametrize("firmware", ["", "[firmware]\npairing = 'nearest'\nsection_order = 'searched'\n"])
+def test_f0_in_the_header_is_not_the_match_frequency(firmware: str) -> None:
+    design = parse_design(DESIGN + firmware)
+    chain = build_chain(design)
+    twins = tuple(make_twin(chain, rate, match_hz=900.0) for rate in design.design.sample_rates)
+    bands = tuple(tuple(default_band_hz(t.sample_rate_hz).tolist()) for t in twins)
+    header = deliver(design, "ab" * 32, chain, twins, bands).header
+    own = {"body": 120.0, "presence": 3200.0}
+    names = [name.removeprefix("poles of ").partition(",")[0] for name in header.section_names]
+    assert header.f0_hz == pytest.approx([own[name] for name in names], rel=1e-12)
+
+
 def test_the_terminal_lines_say_what_rounding_did() -> None:
     line = delivered("[firmware]\nnumber = { bits = 32 }\nsection_order = 'as_designed'\n").lines[0]
     assert "32-bit words, 31 fraction bits, direct form I, shift 1 (fraction bits lost: 1)" in line

@@ -21,9 +21,13 @@ def _linear(pot: Potentiometer, position: FloatArray) -> FloatArray:
 
 
 def _logarithmic(pot: Potentiometer, position: FloatArray) -> FloatArray:
-    """(k^p - 1)/(k - 1); at p = 1/2 that is 1/(1 + sqrt(k)), so k = (1/mid - 1)²."""
-    ratio = (1.0 / _mid(pot) - 1.0) ** 2
-    return np.asarray(np.expm1(position * np.log(ratio)) / (ratio - 1.0))
+    """(k^p - 1)/(k - 1); at p = 1/2 that is 1/(1 + sqrt(k)), so k = (1/mid - 1)².
+
+    Both are expm1 of a logarithm, so that the end of the track is exactly 1: a rounding error more would leave a
+    resistance below zero between wiper and end.
+    """
+    log_ratio = 2.0 * np.log(1.0 / _mid(pot) - 1.0)
+    return np.asarray(np.expm1(position * log_ratio) / np.expm1(log_ratio))
 
 
 def _two_slope(pot: Potentiometer, position: FloatArray) -> FloatArray:

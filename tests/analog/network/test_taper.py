@@ -32,6 +32,13 @@ def test_ends_and_middle(taper):
     assert f[10] == pytest.approx({"linear": 0.5, "table": 0.2}.get(taper, LAWS[taper].get("mid")), rel=1e-14)
 
 
+@pytest.mark.parametrize("mid", [*np.linspace(0.02, 0.48, 47), *np.linspace(0.52, 0.98, 47)])
+def test_ends_of_logarithmic_tracks_are_exact(mid):
+    """A rounding error beyond 1 would be a resistance below zero, a pole in the right half-plane."""
+    taper = "logarithmic" if mid < 0.5 else "reverse_logarithmic"
+    assert law(taper, mid=mid)[[0, -1]].tolist() == [0.0, 1.0]
+
+
 def test_logarithmic_law_rises_by_equal_ratios():
     """f + 1/(k - 1) is an exponential: equal steps of the shaft multiply it by equal factors."""
     k = (1 / 0.15 - 1) ** 2
