@@ -177,8 +177,14 @@ def describe(entry: Section) -> str:
 
 def _parts_or_bands(entry: Section) -> str:
     if isinstance(entry, NetworkSection):
-        return f"network of {len(entry.network.parts)} parts"
-    return f"bank of {len(entry.band)} bands" if isinstance(entry, BankSection) else type(entry).__name__.lower()
+        return f"network of {_count(len(entry.network.parts), 'part')}"
+    return (
+        f"bank of {_count(len(entry.band), 'band')}" if isinstance(entry, BankSection) else type(entry).__name__.lower()
+    )
+
+
+def _count(number: int, noun: str) -> str:
+    return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
 
 
 def _detail(entry: Section, key: str) -> str:

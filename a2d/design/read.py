@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import re
 import tomllib
 import types
 import typing
@@ -92,6 +93,7 @@ def check_design(table: dict[str, Any], name: str = "design") -> Design:
 
 
 def _toml(data: bytes | str, name: str) -> dict[str, Any]:
+    text = ""
     try:
         text = data.decode("utf-8") if isinstance(data, bytes) else data
         if len(text) > LARGEST_FILE:
@@ -100,7 +102,17 @@ def _toml(data: bytes | str, name: str) -> dict[str, Any]:
     except RecursionError as error:
         raise DesignError([Fault("is nested too deeply to be a design", name)]) from error
     except ValueError as error:  # tomllib.TOMLDecodeError and UnicodeDecodeError are ValueErrors
-        raise DesignError([Fault(f"is not TOML: {error}", name)]) from error
+        raise DesignError([Fault(f"is not TOML: {_told(text, str(error))}", name)]) from error
+
+
+def _told(text: str, message: str) -> str:
+    """The parser's message; where it only says that something is there twice, with the name of that."""
+    if not message.startswith("Cannot overwrite a value"):
+        return message
+    lines = text.splitlines()
+    place = re.search(r"line (\d+)", message)
+    written = lines[: int(place[1])] if place is not None else [line for line in lines if line.strip()]
+    return f'"{written[-1].partition("=")[0].strip()}" is there twice, or is a value and a table{message[24:]}'
 
 
 @dataclass(frozen=True)

@@ -109,6 +109,14 @@ def test_not_toml() -> None:
     assert fault.startswith("is not TOML")
 
 
+@pytest.mark.parametrize(
+    "text", ['R1 = { resistor = "1k" }\nR1 = { resistor = "2k" }\n', "R1 = 1\nR1 = 2", "R1 = 1\nR1 = 2 # again\n\n"]
+)
+def test_a_name_that_is_there_twice_is_named(text: str) -> None:
+    (fault,) = faults_of(f"[section.network.parts]\n{text}")
+    assert fault.startswith('is not TOML: "R1" is there twice')
+
+
 def test_a_missing_file_is_named(tmp_path: Path) -> None:
     with pytest.raises(FileError, match=r"cannot read the design: No such file or directory @ .*absent\.toml"):
         read_design_file(tmp_path / "absent.toml")

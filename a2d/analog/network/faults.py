@@ -5,6 +5,9 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterable, Iterator
 
+import numpy as np
+
+from a2d.analog.network.taper import track_fraction
 from a2d.design.network import (
     GROUND,
     Capacitor,
@@ -53,9 +56,20 @@ def _ends(network: Network) -> Iterator[str]:
 
 
 def _shorted_parts(network: Network) -> Iterator[str]:
+    """Parts that their own connections leave without effect, or without a solution."""
     for name, part in network.parts.items():
         if isinstance(part, (Resistor, Capacitor, Inductor, Switch)) and part.nodes[0] == part.nodes[1]:
             yield f'part "{name}" has both of its ends at node "{part.nodes[0]}"'
+        elif isinstance(part, Transformer):
+            for a, b in (part.nodes[:2], part.nodes[2:]):
+                if a == b:
+                    yield f'transformer "{name}" has both ends of a winding at node "{a}"'
+        elif isinstance(part, ControlledVoltage) and part.nodes.out == part.nodes.back:
+            yield f'part "{name}" has both of its ends at node "{part.nodes.out}"'
+        elif isinstance(part, OpAmp) and part.nodes.plus == part.nodes.minus:
+            yield f'op-amp "{name}" has both of its inputs at node "{part.nodes.plus}"'
+        elif isinstance(part, OpAmp) and part.nodes.out == GROUND:
+            yield f'op-amp "{name}" has its output at "{GROUND}"'
 
 
 def _lonely_nodes(network: Network) -> Iterator[str]:
@@ -106,6 +120,8 @@ def _source_loops(network: Network) -> Iterator[str]:
         fixed.join(network.entry.node, GROUND)
     for name, part in network.parts.items():
         for a, b in _fixing(part):
+            if a == b:
+                continue  # told by itself, or the tied side of a potentiometer
             if not fixed.together(a, b):
                 fixed.join(a, b)
             elif {a, b} == {network.entry.node, GROUND} and network.entry.source == 0.0:
@@ -122,6 +138,9 @@ def _fixing(part: Part) -> Iterator[Edge]:
         yield (part.nodes.out, GROUND)
     elif isinstance(part, ControlledVoltage):
         yield (part.nodes.out, part.nodes.back)
+    elif isinstance(part, Potentiometer) and part.end_resistance == 0.0:
+        fraction = float(track_fraction(part, np.asarray(part.position)))
+        yield from [side for side, share in ((part.nodes[:2], fraction), (part.nodes[1:], 1.0 - fraction)) if not share]
 
 
 def _stiff(model: object) -> bool:

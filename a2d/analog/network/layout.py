@@ -100,7 +100,13 @@ class Layout:
         return k
 
     def resistance(self, a: int, b: int, name: str, quantity: int) -> None:
-        """A resistance (in units of `impedance`) that may be zero."""
+        """A resistance (in units of `impedance`) that may be zero.
+
+        Between a node and itself, as where a wiper is tied to an end, nothing flows: an equation for it would read
+        0 = R·i, which at R = 0 leaves the current open.
+        """
+        if a == b:
+            return
         k = self.branch(a, b, name)
         self.add(k, k, -1.0, quantity)
 

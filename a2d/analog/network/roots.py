@@ -141,7 +141,7 @@ def _solvable(pencil: Pencil, shift: float) -> bool:
 def _within(matrices: FloatArray, shifts: FloatArray, step: float) -> ComplexArray:
     """The roots that lie within half a step of their own shift; conjugates made exact."""
     eigenvalues = np.linalg.eigvals(matrices).astype(np.complex128)
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         roots = shifts[:, np.newaxis] - 1.0 / eigenvalues
         size = np.abs(roots) / shifts[:, np.newaxis]
     found = roots[(size >= step**-0.5) & (size < step**0.5)]

@@ -4,9 +4,9 @@ import pytest
 
 from a2d.analog.network.faults import faults
 from a2d.analog.network.solve import solve_network
-from a2d.design.network import ControlledNodes, ControlledVoltage, Switch
+from a2d.design.network import ControlledNodes, ControlledVoltage, Switch, Transformer
 from a2d.errors import NetworkError
-from tests.support.networks import c, network, one_pole, opamp, r
+from tests.support.networks import c, network, one_pole, opamp, pot, r
 
 RC = {"R1": r(1e3, "in", "out"), "C1": c(1e-6, "out", "gnd")}
 
@@ -33,12 +33,28 @@ def test_a_sound_network_has_no_faults():
         ({"U1": opamp("out", "gnd", "y"), "R2": r(1e3, "y", "gnd")}, 'op-amp "U1" has no feedback'),
         ({"r1": r(1e3, "in", "out")}, 'the name of part "r1" is there twice but for capitals'),
         ({"R2": r(1e3, "out", "out")}, 'part "R2" has both of its ends at node "out"'),
+        ({"U1": opamp("x", "x", "y"), "R2": r(1e3, "x", "y")}, 'op-amp "U1" has both of its inputs at node "x"'),
+        ({"U1": opamp("gnd", "out", "gnd")}, 'op-amp "U1" has its output at "gnd"'),
+        (
+            {"T1": Transformer(transformer=2.0, nodes=("in", "in", "out", "gnd"))},
+            'transformer "T1" has both ends of a winding at node "in"',
+        ),
+        ({"P1": pot(1e4, "in", "gnd", "gnd", 0.0)}, 'part "P1" is a short across the input "in"'),
+        ({"P1": pot(1e4, "gnd", "gnd", "in", 1.0)}, 'part "P1" is a short across the input "in"'),
+        ({"P1": pot(1e4, "out", "x", "gnd", 0.0), "S1": Switch(switch="closed", nodes=("out", "x"))}, "closes a loop"),
         ({"load": r(1e3, "in", "out")}, 'the part "load" has a reserved name'),
     ],
 )
 def test_fault(more, message):
     with pytest.raises(NetworkError, match=message):
         solve_network(network({**RC, **more}))
+
+
+@pytest.mark.parametrize(("nodes", "position"), [(("in", "in", "out"), 0.0), (("in", "out", "out"), 1.0)])
+def test_a_wiper_tied_to_its_end(nodes, position):
+    """The side that is tied off carries no current, at the end of the travel too: what is left is the whole track."""
+    solution = solve_network(network({"P1": pot(1e3, *nodes, position), "C1": c(1e-6, "out", "gnd")}))
+    assert solution.a[0] / solution.a[0, 2] == pytest.approx([0.0, 1e-3, 1.0], rel=1e-12)
 
 
 def test_an_output_that_the_input_cannot_reach():
