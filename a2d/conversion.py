@@ -9,6 +9,7 @@ import numpy as np
 from a2d.analog.build import build_chain
 from a2d.analog.chain import AnalogChain
 from a2d.compare.advice import Attempt, Remedy, remedies, twin_of, verdict
+from a2d.compare.banks import parallel_banks
 from a2d.compare.control_tables import ControlTable, ready_sections, sweep_controls, tabulate
 from a2d.compare.errors import Comparison, band_of, compare, compare_sections
 from a2d.compare.verdict import Breach
@@ -58,8 +59,8 @@ class Conversion:
 
     @property
     def within_limits(self) -> bool:
-        """Whether no twin breaks a limit, at the design's own setting or at another position of a control."""
-        twins = any(j.breaches for j in self.judged)
+        """Whether no twin breaks a limit: the design's own setting, other positions of controls, banks in parallel."""
+        twins = any(j.breaches for j in self.judged) or any(any(b.breaches) for b in parallel_banks(self.design))
         return not twins and not any(rate.breaches for table in self.controls for rate in table.rates)
 
 

@@ -7,7 +7,7 @@ import sys
 from dataclasses import replace
 
 from a2d.commands import summary
-from a2d.commands.banks import bank_files
+from a2d.commands.banks import bank_breaches, bank_files
 from a2d.commands.circuits import FIGURE_COLUMNS, figure_rows
 from a2d.commands.control_summary import control_breaches, control_notes, controls_table
 from a2d.commands.delivery import delivery_of
@@ -151,7 +151,7 @@ def report_breaches(conversion: Conversion, delivery: Delivery) -> int:
             print(f"a2d convert: at {judged.twin.sample_rate_hz:g} Hz {remedy}", file=sys.stderr)
         if judged.breaches and not judged.advice:
             print("a2d convert: no other method, scope or doubled rate that was tried comes nearer", file=sys.stderr)
-    for line in control_breaches(conversion.controls):
+    for line in [*bank_breaches(conversion.design), *control_breaches(conversion.controls)]:
         within = False
         print(f"a2d convert: {line}", file=sys.stderr)
     return 0 if within else 1

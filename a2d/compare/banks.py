@@ -8,8 +8,9 @@ from a2d.analog.bank import Bank, scaled_bank
 from a2d.analog.build import bank_of
 from a2d.compare.errors import band_of
 from a2d.compare.parallel import BankComparison, compare_bank
+from a2d.compare.verdict import Breach
 from a2d.design.hardware import BankSection, CircuitSection, NetworkSection
-from a2d.design.model import Design
+from a2d.design.model import Design, Limits
 from a2d.digital.parallel import ParallelTwin, make_parallel_twin
 
 
@@ -23,14 +24,15 @@ class JudgedBank:
         The section's.
     bank
         The analog bands and weights, the section's factor included.
-    twins, comparisons
-        One a sample rate.
+    twins, comparisons, breaches
+        One a sample rate; the limits of magnitude and phase that the parallel form of the bank alone breaks.
     """
 
     name: str
     bank: Bank
     twins: tuple[ParallelTwin, ...]
     comparisons: tuple[BankComparison, ...]
+    breaches: tuple[tuple[Breach, ...], ...]
 
 
 def parallel_banks(design: Design) -> tuple[JudgedBank, ...]:
@@ -45,10 +47,29 @@ def _judged(design: Design, section: BankSection) -> JudgedBank:
     match = [band.match if band.match is not None else section.match for band in section.band]
     found = [isinstance(band, (NetworkSection, CircuitSection)) for band in section.band]
     stated = design.limits.band if design.limits is not None else None
+    weight_phase = float(design.design.weight_phase)
     twins, comparisons = [], []
     for rate in design.design.sample_rates:
         low, high = (float(f) for f in band_of(rate, stated))
-        twin = make_parallel_twin(bank, rate, method=method, match_hz=match, found=found, band_hz=(low, high))
+        twin = make_parallel_twin(
+            bank, rate, method=method, match_hz=match, found=found, band_hz=(low, high), weight_phase=weight_phase
+        )
         twins.append(twin)
         comparisons.append(compare_bank(bank, twin, (low, high)))
-    return JudgedBank(section.name, bank, tuple(twins), tuple(comparisons))
+    breaches = tuple(judge_bank(comparison, design.limits) for comparison in comparisons)
+    return JudgedBank(section.name, bank, tuple(twins), tuple(comparisons), breaches)
+
+
+def judge_bank(comparison: BankComparison, limits: Limits | None) -> tuple[Breach, ...]:
+    """The limits of magnitude and phase that a bank in parallel form breaks by itself."""
+    if limits is None:
+        return ()
+    rows = (
+        ("magnitude", "dB", limits.magnitude, comparison.magnitude_db),
+        ("phase", "deg", limits.phase, comparison.phase_deg),
+    )
+    return tuple(
+        Breach(what, unit, float(limit), found.worst, found.at_hz)
+        for what, unit, limit, found in rows
+        if limit is not None and not abs(found.worst) <= limit
+    )

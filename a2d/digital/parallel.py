@@ -52,6 +52,7 @@ def make_parallel_twin(
     match_hz: Sequence[float | None],
     found: Sequence[bool],
     band_hz: tuple[float, float] | None = None,
+    weight_phase: float = 0.0,
 ) -> ParallelTwin:
     """The twin of a bank, band by band.
 
@@ -66,12 +67,16 @@ def make_parallel_twin(
         circuit (`match_points`).
     band_hz
         The band that matters, Hz; `default_band_hz` when absent.
+    weight_phase
+        For minimax, as in `make_twin`.
     """
-    low, high = default_band_hz(sample_rate_hz) if band_hz is None else band_hz
+    low, high = (float(f) for f in (default_band_hz(sample_rate_hz) if band_hz is None else band_hz))
     twins = []
     for name, sections, how, stated, is_found in zip(bank.names, bank.bands, method, match_hz, found, strict=True):
         count = len(sections.f0_hz)
         chain = AnalogChain.of(numbered(name, count), *sections)
-        match = match_points(chain.f0_hz, [stated] * count, [is_found] * count, (float(low), float(high)))
-        twins.append(make_twin(chain, sample_rate_hz, method=how, match_hz=match, band_hz=(float(low), float(high))))
+        match = match_points(chain.f0_hz, [stated] * count, [is_found] * count, (low, high))
+        twins.append(
+            make_twin(chain, sample_rate_hz, method=how, match_hz=match, band_hz=(low, high), weight_phase=weight_phase)
+        )
     return ParallelTwin(bank.names, tuple(twins), bank.mix, bank.direct, float(sample_rate_hz))

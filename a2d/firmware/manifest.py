@@ -94,8 +94,10 @@ def _bank(judged: JudgedBank) -> dict[str, Any]:
                     "magnitude_db": _worst(comparison.magnitude_db),
                     "phase_deg": _worst(comparison.phase_deg),
                 },
+                "within_limits": not breaches,
+                "broken_limits": [str(breach) for breach in breaches],
             }
-            for twin, comparison in zip(judged.twins, judged.comparisons, strict=True)
+            for twin, comparison, breaches in zip(judged.twins, judged.comparisons, judged.breaches, strict=True)
         ],
     }
 

@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 from scipy import signal
 
+import a2d
 from a2d.cli import main
 from a2d.compare.banks import parallel_banks
 from a2d.design.read import parse_design
@@ -118,3 +119,58 @@ def test_two_bands_of_one_c_name_are_refused(bank):
 
 def test_symbol():
     assert bank_symbol("desk", "room 1") == "desk_room_1"
+
+
+def convert(tmp_path, text):
+    path = tmp_path / "bank.toml"
+    path.write_text(text)
+    return main(["convert", str(path), "--out", str(tmp_path / "out")])
+
+
+def test_a_limit_that_only_the_parallel_form_breaks(tmp_path, capsys):
+    """The demo's cascade stays within 0.05 dB at 48 kHz; its parallel form, band by band, is 0.79 dB off."""
+    text = (ROOT / "audio_examples/lighthouse_bank.toml").read_text() + '\n[limits]\nmagnitude = "0.1 dB"\n'
+    assert convert(tmp_path, text) == 1
+    said = capsys.readouterr().err
+    assert "limit broken at 48000 Hz by room in parallel: magnitude error +0.78" in said
+    assert not a2d.convert(parse_design(text)).within_limits
+    (bank,) = json.loads((tmp_path / "out/lighthouse_bank.twin.json").read_text())["banks"]
+    assert [twin["within_limits"] for twin in bank["twins"]] == [False, False]
+
+
+def test_a_phase_weight_reaches_the_bands(tmp_path):
+    """Bands that are fitted in phase too add up as they should."""
+    text = (ROOT / "audio_examples/lighthouse_bank.toml").read_text()
+    (plain,) = parallel_banks(parse_design(text))
+    (weighted,) = parallel_banks(parse_design(text.replace("[design]", "[design]\nweight_phase = 1", 1)))
+    for before, after in zip(plain.comparisons, weighted.comparisons, strict=True):
+        assert abs(after.phase_deg.worst) < 0.5 * abs(before.phase_deg.worst)
+
+
+SMALL = """
+[design]
+name = "x"
+sample_rates = ["48 kHz"]
+"""
+BANK = """
+[[section]]
+name = "{name}"
+form = "parallel"
+[[section.band]]
+name = "b"
+kind = "bandpass"
+f0 = "1 kHz"
+q = 1
+"""
+
+
+@pytest.mark.parametrize("other", ["my_room", "MY ROOM"])
+def test_two_banks_with_one_name_in_c_are_refused(tmp_path, capsys, other):
+    """The second would have taken the first one's file."""
+    assert convert(tmp_path, SMALL + BANK.format(name="my room") + BANK.format(name=other)) == 2
+    assert f'the banks "my room" and "{other}" have the same name in C' in capsys.readouterr().err
+
+
+def test_firmware_keys_that_do_not_reach_the_bank_are_named(tmp_path, capsys):
+    assert convert(tmp_path, SMALL + BANK.format(name="room") + '[firmware]\nfeedback = "negated"\n') == 0
+    assert "feedback of [firmware] does not apply to .bank.h" in " ".join(capsys.readouterr().out.split())
