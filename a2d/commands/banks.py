@@ -41,7 +41,7 @@ def bank_files(conversion: Conversion, sha256: str) -> dict[str, bytes | str]:
 
 
 def bank_notes(conversion: Conversion) -> list[str]:
-    """The errors of each parallel twin against the analog sum, before and after rounding, and what does not apply."""
+    """The errors of each parallel twin against the analog sum, before and after rounding, and keys without effect."""
     banks = parallel_banks(conversion.design)
     ignored = _not_applied(conversion.design.firmware)
     lines = [line for judged in banks for line in _lines(conversion.design, judged)]
