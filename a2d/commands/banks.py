@@ -47,8 +47,8 @@ def bank_notes(conversion: Conversion) -> list[str]:
     lines = [line for judged in banks for line in _lines(conversion.design, judged)]
     if banks and ignored:
         lines.append(
-            f"{', '.join(ignored)} of [firmware] does not apply to .bank.h: its rows are b0, b1, b2, a1, a2 as written, "
-            "in transposed direct form II"
+            f"{', '.join(ignored)} of [firmware] does not apply to .bank.h: its rows are b0, b1, b2, a1, a2 as "
+            "written, in transposed direct form II"
         )
     return lines
 
