@@ -11,8 +11,13 @@ from a2d.errors import ParameterError
 
 
 def finite(name: str, value: ArrayLike) -> FloatArray:
-    """`value` as float64, or an error when any element is NaN or infinite."""
-    array = np.asarray(value, dtype=np.float64)
+    """`value` as float64, or an error when any element is no real number, NaN or infinite."""
+    try:
+        if np.iscomplexobj(value):
+            raise TypeError
+        array = np.asarray(value, dtype=np.float64)
+    except (TypeError, ValueError):
+        raise ParameterError(f"{name} is not a real number or an array of them ({value!r})") from None
     if not np.all(np.isfinite(array)):
         raise ParameterError(f"{name} is not a finite number ({_shown(array)})")
     return array
@@ -29,10 +34,10 @@ def positive(name: str, value: ArrayLike, unit: str = "") -> FloatArray:
 def between(name: str, value: ArrayLike, low: float, high: float, unit: str = "") -> FloatArray:
     """`value` as float64, or an error when any element is outside `low` to `high`, both included."""
     array = finite(name, value)
-    if np.any(array < low) or np.any(array > high):
-        raise ParameterError(
-            f"{name} must lie from {low:g} to {high:g}{_spaced(unit)} ({_shown(array)}{_spaced(unit)})"
-        )
+    outside = (array < low) | (array > high)
+    if np.any(outside):
+        worst = _shown(array if array.ndim == 0 else array[outside])
+        raise ParameterError(f"{name} must lie from {low:g} to {high:g}{_spaced(unit)} ({worst}{_spaced(unit)})")
     return array
 
 

@@ -10,7 +10,7 @@ from a2d.commands.delivery import delivery_of
 from a2d.commands.options import add_design
 from a2d.conversion import convert
 from a2d.design.read import read_design_file
-from a2d.errors import FileError
+from a2d.errors import FileError, HeaderError
 from a2d.firmware.check import differences
 from a2d.firmware.read_header import read_header
 
@@ -26,7 +26,11 @@ def add_options(parser: argparse.ArgumentParser) -> None:
 def run(args: argparse.Namespace) -> int:
     """0 when the header is the design's, 1 when it is not."""
     source = read_design_file(args.design)
-    found = read_header(_text(args.header))
+    text = _text(args.header)
+    try:
+        found = read_header(text)
+    except HeaderError as error:
+        raise HeaderError(f"{error} @ {args.header}") from error
     conversion = convert(source.design)
     expected = delivery_of(conversion, source.sha256).header
     faults = differences(expected, found)

@@ -30,6 +30,8 @@ def add_options(parser: argparse.ArgumentParser) -> None:
 
 def run(args: argparse.Namespace) -> int:
     """Print what was asked for."""
+    if args.schema and args.names:
+        raise ParameterError(f"--schema is that of the whole design file ({args.names[0]!r}; leave out one of the two)")
     if args.schema:
         print(json.dumps(design_schema(), indent=1, ensure_ascii=False))
         return 0
@@ -45,7 +47,7 @@ def run(args: argparse.Namespace) -> int:
         equations, lines = entries[name]
         out.print(name, style="bold")
         for line in [*filter(None, equations), *lines]:
-            out.print(f"    {line}")
+            out.print(f"    {line}", soft_wrap=True)
     return 0
 
 

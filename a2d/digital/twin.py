@@ -131,9 +131,14 @@ def make_twin(
     [0.01031, 0.01031, 0.0, 1.0, -0.979381, 0.0]
     """
     rate = float(checks.positive("sample rate", sample_rate_hz, "Hz"))
-    match = np.broadcast_to(chain.f0_hz if match_hz is None else np.asarray(match_hz, dtype=np.float64), len(chain))
+    match = chain.f0_hz if match_hz is None else checks.positive("match_hz", match_hz, "Hz")
+    if match.shape not in ((), (1,), (len(chain),)):
+        raise ParameterError(f"match_hz must be one number or one a section ({match.shape} for {len(chain)} sections)")
+    match = np.broadcast_to(match, len(chain))
     _refuse_unfit(chain)
     methods = (method,) * len(chain) if isinstance(method, str) else tuple(method)
+    if len(methods) != len(chain):
+        raise ParameterError(f"method must be one name or one a section ({len(methods)} for {len(chain)} sections)")
     _check_methods(chain.names, methods, match, rate)
     if scope not in SCOPES:
         raise ParameterError(f"there is no scope {scope!r} (allowed: {', '.join(SCOPES)})")

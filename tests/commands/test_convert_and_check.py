@@ -155,7 +155,7 @@ def test_check_names_what_differs(
 
 def test_check_names_a_file_that_is_no_header(design: Path, capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["check", str(design), "--header", str(design)]) == 2
-    assert "a2d check:" in capsys.readouterr().err
+    assert f"with name and title @ {design}" in capsys.readouterr().err
 
 
 def test_list_shows_every_kind_and_its_equation(capsys: pytest.CaptureFixture[str]) -> None:
@@ -163,6 +163,7 @@ def test_list_shows_every_kind_and_its_equation(capsys: pytest.CaptureFixture[st
     shown = " ".join(capsys.readouterr().out.split())
     for kind in a2d.KINDS.values():
         assert " ".join(kind.equation.split()) in shown
+        assert kind.equation.startswith("H(s) = ")
     assert main(["list", "peeking"]) == 2
     assert 'nearest is "peaking"' in capsys.readouterr().err
 
@@ -170,6 +171,7 @@ def test_list_shows_every_kind_and_its_equation(capsys: pytest.CaptureFixture[st
 def test_list_prints_a_schema(capsys: pytest.CaptureFixture[str]) -> None:
     assert main(["list", "--schema"]) == 0
     assert json.loads(capsys.readouterr().out) == a2d.design_schema()
+    assert main(["list", "--schema", "peaking"]) == 2
 
 
 def bytes_of(folder: Path) -> dict[str, bytes]:

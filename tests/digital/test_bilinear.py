@@ -163,6 +163,22 @@ def test_more_zeros_than_poles_is_an_error() -> None:
         make_twin(chain, 48_000.0)
 
 
+@pytest.mark.parametrize(
+    ("wrong", "message"),
+    [
+        ({"sample_rate_hz": "48k"}, "sample rate is not a real number"),
+        ({"sample_rate_hz": 48_000.0 + 0j}, "sample rate is not a real number"),
+        ({"match_hz": [1e3, 2e3, 3e3]}, "match_hz must be one number or one a section"),
+        ({"method": ["bilinear"]}, "method must be one name or one a section"),
+        ({"weight_phase": 101.0}, r"weight_phase must lie from 0 to 100 \(101\)"),
+    ],
+)
+def test_arguments_that_make_no_sense_are_one_clear_error(wrong: dict[str, object], message: str) -> None:
+    chain = AnalogChain.of(["a", "b"], b=[[0, 0, 1], [0, 0, 1]], a=[[0, 1e-3, 1], [0, 1e-4, 1]])
+    with pytest.raises(ParameterError, match=message):
+        make_twin(chain, **{"sample_rate_hz": 48_000.0, **wrong})  # type: ignore[arg-type]
+
+
 def test_an_unknown_method_is_an_error() -> None:
     chain = chain_of(equalisers.peaking(1000.0, 1.0, 6.0))
     with pytest.raises(ParameterError, match="there is no method 'magic'"):

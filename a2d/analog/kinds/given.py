@@ -46,7 +46,7 @@ def root_pair(f0: float, q: float | None = None, *, axis: bool = False, right: b
 
 
 def pole_zero(poles: ComplexArray, zeros: ComplexArray, gain_db: float = 0.0, reference_hz: float = 0.0) -> Sections:
-    """H(s) = k·Π(s - z)/Π(s - p), with |H| = `gain_db` at `reference_hz`; roots in rad/s (`root_pair`).
+    """H(s) = k·Π(s - z)/Π(s - p), |H| = `gain` at `reference` (0 Hz when absent); p, z in rad/s.
 
     The polarity is that of positive k, or of positive H(0) where the reference is 0 Hz.
     """

@@ -21,13 +21,18 @@ HIGHEST_ORDER = 20
 
 
 def butterworth_poles(order: int) -> ComplexArray:
-    """Poles of |H|² = 1/(1 + w^2n), -3.01 dB at 1 rad/s."""
+    """H(s) = G·Π(-p)/Π(s - p), the poles p of |H|² = G²/(1 + w^2n), -3.01 dB at f0 (1 rad/s);
+    high-pass by s → 1/s, band-pass by s → (s² + w1·w2)/(s·(w2 - w1)).
+    """
     n = checks.whole("order", order, 1, HIGHEST_ORDER)
     return _exact_conjugates(np.exp(1j * np.pi * (2.0 * np.arange(n) + n + 1.0) / (2.0 * n)))
 
 
 def chebyshev_poles(order: int, ripple_db: float, edge: str = "ripple") -> ComplexArray:
-    """Poles of a Chebyshev (type I) low-pass; 1 rad/s ends the ripple band, or is 3.01 dB below the peak (`-3 dB`)."""
+    """H(s) = G0·Π(-p)/Π(s - p), the poles p of |H|² = G²/(1 + ε²·Tn(w)²) (type I), ripple = 10·lg(1 + ε²), peak G;
+    f0 (1 rad/s) ends the ripple band, or is 3.01 dB below the peak (`-3 dB`);
+    high-pass by s → 1/s, band-pass by s → (s² + w1·w2)/(s·(w2 - w1)).
+    """
     n = checks.whole("order", order, 1, HIGHEST_ORDER)
     epsilon = math.sqrt(math.expm1(float(checks.positive("ripple", ripple_db, "dB")) * math.log(10.0) / 10.0))
     mu = math.asinh(1.0 / epsilon) / n
@@ -38,8 +43,9 @@ def chebyshev_poles(order: int, ripple_db: float, edge: str = "ripple") -> Compl
 
 
 def bessel_poles(order: int, normalisation: str = "magnitude") -> ComplexArray:
-    """Poles of the Bessel low-pass: -3.01 dB at 1 rad/s (`magnitude`), asymptotes that meet there (`phase`), or 1 s
-    of delay at d.c. (`delay`).
+    """H(s) = G·θn(0)/θn(c·s), θn the reverse Bessel polynomial of order n, and c such that f0 (1 rad/s) is at -3.01 dB
+    (`magnitude`), where the asymptotes meet (`phase`), or 1/(2π·delay at d.c.) (`delay`);
+    high-pass by s → 1/s, band-pass by s → (s² + w1·w2)/(s·(w2 - w1)).
     """
     n = checks.whole("order", order, 1, HIGHEST_ORDER)
     delay_poles = _reverse_bessel_roots(n)
