@@ -101,7 +101,7 @@ def _compare(
 ) -> tuple[Comparison, ...]:
     """Comparisons of N chains: `b`, `a` [N, S, 3], `sos` [N, T, 6]."""
     band = band_of(rate, band_hz)
-    f = frequency_grid(b.reshape(-1, 3), a.reshape(-1, 3), band)
+    f = frequency_grid(b.reshape(-1, 3), a.reshape(-1, 3), band, sos, rate)
     peak = largest_magnitude(b, a, f)
     on_grid = error_curves(b, a, sos, rate, f, peak)
     jumps = b.shape[-2] != sos.shape[-2]  # see `curves`: only then the phase is known to 360 degrees alone

@@ -121,14 +121,19 @@ def mask_of(limits: Limits) -> Mask | None:
     return None if limits.mask is None else MASKS[limits.mask](limits, limits.mask)
 
 
-def mask_grid(mask: Mask, b: FloatArray, a: FloatArray, top_hz: float) -> FloatArray:
+def mask_grid(mask: Mask, chain: AnalogChain, twin: Twin, top_hz: float) -> FloatArray:
     """Where a mask is looked at: evenly over its range up to `top_hz`, at its exact tenth-decades, near resonances."""
     low, high = mask.range_hz[0], min(mask.range_hz[1], top_hz)
     tenths = 10.0 ** (0.1 * np.arange(np.ceil(10.0 * np.log10(low)), np.floor(10.0 * np.log10(high)) + 0.5))
     centre = mask.reference_hz or np.sqrt(mask.range_hz[0] * mask.range_hz[1])
     even = np.geomspace(low, high, int(POINTS_AN_OCTAVE * np.log2(high / low)) + 2)
-    points = np.concatenate([even, tenths, [centre], frequency_grid(b, a, np.array([low, high]))])
+    points = np.concatenate([even, tenths, [centre], near_resonances(chain, twin, low, high)])
     return rising(points, low, high)
+
+
+def near_resonances(chain: AnalogChain, twin: Twin, low_hz: float, high_hz: float) -> FloatArray:
+    """A grid that misses no narrow section of either."""
+    return frequency_grid(chain.b, chain.a, np.array([low_hz, high_hz]), twin.sos, twin.sample_rate_hz)
 
 
 def judge_response(chain: AnalogChain, twin: Twin, limits: Limits | None) -> tuple[MaskBreach, ...]:
@@ -139,10 +144,10 @@ def judge_response(chain: AnalogChain, twin: Twin, limits: Limits | None) -> tup
     found = []
     mask = mask_of(limits)
     if mask is not None:
-        f_hz = mask_grid(mask, chain.b, chain.a, top)
+        f_hz = mask_grid(mask, chain, twin, top)
         found.append(_worst_breach(mask.name, f_hz, _difference(mask, twin, f_hz), mask.interval_db(f_hz)))
     if limits.table:
-        f_hz = frequency_grid(chain.b, chain.a, np.array([limits.table[0][0], min(limits.table[-1][0], top)]))
+        f_hz = near_resonances(chain, twin, float(limits.table[0][0]), min(float(limits.table[-1][0]), top))
         error = 20.0 * np.log10(np.abs(twin.response(f_hz)) / np.abs(chain.response(f_hz)))
         found.append(_worst_breach("magnitude error against the table", f_hz, error, table_interval(limits, f_hz)))
     return tuple(breach for breach in found if breach is not None)

@@ -27,7 +27,8 @@ def compare_bank(bank: Bank, twin: ParallelTwin, band_hz: tuple[float, float]) -
     """Worst errors between grid points too; what lies 80 dB below the largest response counts as lying there."""
     b = np.concatenate([band.b for band in bank.bands])
     a = np.concatenate([band.a for band in bank.bands])
-    grid = frequency_grid(b, a, np.asarray(band_hz))
+    sos = np.concatenate([band.sos for band in twin.bands])
+    grid = frequency_grid(b, a, np.asarray(band_hz), sos, twin.sample_rate_hz)
     floor = float(np.abs(bank.response(grid)).max()) * 10.0 ** (-FLOOR_DB / 20.0)
 
     def curves(f_hz: FloatArray) -> FloatArray:

@@ -15,7 +15,7 @@ import numpy as np
 from a2d.analog.response import phase_slope, polynomial
 from a2d.arrays import ComplexArray, FloatArray, IntArray
 from a2d.compare.curves import FLOOR_DB
-from a2d.digital.warped import from_z
+from a2d.compare.grid import around_narrow
 
 _Curves: TypeAlias = tuple[ComplexArray, FloatArray]
 
@@ -23,8 +23,6 @@ MAGNITUDE, PHASE, GROUP_DELAY = range(3)
 QUANTITIES = ("magnitude", "phase", "group_delay")
 _BLOCK = 1 << 16  # values of one curve array at a time: what stays in a processor's cache
 _POINTS = 256  # over the band, logarithmic; 2.7 % apart over three decades
-_NARROW = 0.04  # a bandwidth over f0 below which a section gets points of its own
-_CLUSTER = np.concatenate([-np.geomspace(4.5, 0.05, 10), [0.0], np.geomspace(0.05, 4.5, 10)])  # half bandwidths
 _FOLDED = 150.0  # degrees
 _PEAKS, _ZOOM_POINTS, _ZOOMS = 2, 9, 4
 
@@ -93,7 +91,7 @@ def position_errors(
         Leave phase and group delay out: zeros.
     """
     rates = (reference_rate_hz, rate_hz)
-    f = _common_grid(pieces, band_hz, reference_rate_hz)
+    f = _common_grid(pieces, band_hz, rates)
     curves = [
         tuple(_curves(c, f, r, not magnitude_only) for c, r in zip((p.reference, p.candidate), rates, strict=True))
         for p in pieces
@@ -140,24 +138,13 @@ class _Block:
         return np.asarray(_errors(sides[0], sides[1], self.floor, quantity == MAGNITUDE)[quantity])
 
 
-def _common_grid(pieces: Sequence[Piece], band_hz: FloatArray, rate_hz: float | None) -> FloatArray:
-    """Frequencies for all positions, with more of them around narrow sections."""
+def _common_grid(pieces: Sequence[Piece], band_hz: FloatArray, rates: tuple[float | None, float | None]) -> FloatArray:
+    """Frequencies for all positions, with more of them around narrow sections of reference and candidate."""
     even = np.geomspace(band_hz[0], band_hz[1], _POINTS)
-    extra = [around_narrow(p.reference[..., k : k + 3], rate_hz) for p in pieces for k in (0, 3)]
+    sides = [(p.reference, rates[0]) for p in pieces] + [(p.candidate, rates[1]) for p in pieces]
+    extra = [around_narrow(sections[..., k : k + 3], rate) for sections, rate in sides for k in (0, 3)]
     points = np.concatenate([even, *extra])
     return np.unique(points[(points >= band_hz[0]) & (points <= band_hz[1])])
-
-
-def around_narrow(c: FloatArray, rate_hz: float | None) -> FloatArray:
-    """Frequencies in Hz around the roots of polynomials `c` [..., 3] that are narrower than the grid resolves."""
-    if rate_hz is not None:
-        c = from_z(c, np.zeros(c.shape[:-1], dtype=np.bool_))
-    c2, c1, c0 = (np.abs(c[..., k]) for k in range(3))
-    narrow = (c2 > 0.0) & (c1 * c1 < _NARROW**2 * c0 * c2)
-    w0 = np.sqrt(c0[narrow] / c2[narrow])
-    f0 = w0 / (2.0 * np.pi) if rate_hz is None else np.arctan(w0) * (rate_hz / np.pi)
-    half_width = np.maximum(c1[narrow] / np.sqrt(c0[narrow] * c2[narrow]), 1e-6) * 0.5
-    return np.asarray((f0[:, np.newaxis] * (1.0 + half_width[:, np.newaxis] * _CLUSTER)).ravel())
 
 
 def _blocks(count: int, points: int) -> Iterator[slice]:

@@ -68,6 +68,19 @@ def test_no_dense_grid_finds_more(f0: float, q: float, gain: float, match: float
     assert abs(found.worst) >= np.max(np.abs(error)) * (1.0 - 1e-6) - 1e-12
 
 
+@pytest.mark.parametrize("own_hz", [61.0, 2345.6, 17_501.0])
+def test_a_resonance_of_the_twin_alone_is_found(own_hz: float) -> None:
+    """Sections made elsewhere may ring where the hardware does not, between the points of any fixed grid."""
+    chain = chain_of(equalisers.peaking(1000.0, 1.0, 6.0))
+    narrow = make_twin(chain_of(equalisers.peaking(own_hz, 400.0, 12.0)), 48_000.0)
+    twin = Twin.from_sos(np.concatenate([make_twin(chain, 48_000.0).sos, narrow.sos]), 48_000.0)
+    f = own_hz * (1.0 + np.linspace(-5.0, 5.0, 20_001) / 400.0)
+    error = 20.0 * np.log10(np.abs(twin.response(f) / chain.response(f)))
+    found = compare(chain, twin, (20.0, 20_000.0)).magnitude_db
+    assert found.worst == pytest.approx(error.max(), rel=1e-6)
+    assert found.at_hz == pytest.approx(own_hz, rel=1e-4)
+
+
 def test_best_delay_takes_out_a_pure_delay() -> None:
     f = np.geomspace(20.0, 20_000.0, 400)
     delays = np.array([3.1e-6, -7.7e-6])
