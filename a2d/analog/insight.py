@@ -9,11 +9,10 @@ import numpy as np
 from a2d.analog.network.change import with_op_amps, without_ends
 from a2d.analog.network.parts import lay_out
 from a2d.analog.network.pencil import direct_response
-from a2d.analog.network.stability import check_stability
+from a2d.analog.network.stability import growing_pole
 from a2d.arrays import ComplexArray, FloatArray
 from a2d.design.network import Network, OpAmp, OpAmpModel
 from a2d.design.quantities import Decibel, Hertz
-from a2d.errors import NetworkError
 
 EVERYDAY_OP_AMP = OpAmpModel(gain_bandwidth=Hertz(3e6), dc_gain=Decibel(100.0))
 """Stands for an audio op-amp where a design has ideal ones: 3 MHz and 100 dB, common practice."""
@@ -49,7 +48,8 @@ class Change:
     what
         The reason: `op-amps of 3 MHz in place of ideal ones`.
     worst_db, at_hz
-        The change where it is largest, with its sign.
+        The change where it is largest, with its sign; infinite, at the frequency of the pole in the right half-plane,
+        where the network would be unstable.
     """
 
     what: str
@@ -84,7 +84,7 @@ def changes(network: Network, band_hz: tuple[float, float]) -> tuple[Change, ...
     """
     f_hz = np.geomspace(*band_hz, _POINTS)
     here = _response(network, f_hz)
-    found: list[Change | None] = []
+    found: list[Change] = []
     if any(isinstance(part, OpAmp) and part.opamp != "ideal" for part in network.parts.values()):
         ideal = _response(with_op_amps(network, "ideal"), f_hz)
         found.append(_change("the op-amps' finite gain-bandwidth", here, ideal, f_hz))
@@ -96,17 +96,16 @@ def changes(network: Network, band_hz: tuple[float, float]) -> tuple[Change, ...
     if network.exit.load is not None:
         without = _response(without_ends(network, load=True), f_hz)
         found.append(_change(f"the load of {network.exit.load:g} Ω", here, without, f_hz))
-    return tuple(change for change in found if change is not None)
+    return tuple(found)
 
 
-def _everyday(network: Network, ideal: ComplexArray, f_hz: FloatArray) -> Change | None:
-    """None when the circuit would be unstable with such op-amps, or needs ideal ones."""
-    real = with_op_amps(network, EVERYDAY_OP_AMP)
-    try:
-        check_stability(real)
-    except NetworkError:
-        return None
-    return _change("op-amps of 3 MHz in place of ideal ones (would change)", _response(real, f_hz), ideal, f_hz)
+def _everyday(network: Network, ideal: ComplexArray, f_hz: FloatArray) -> Change:
+    """The change without bound when the circuit is unstable with such op-amps: their delay can undo its damping."""
+    real, what = with_op_amps(network, EVERYDAY_OP_AMP), "op-amps of 3 MHz in place of ideal ones (would change)"
+    pole = growing_pole(real)
+    if pole is not None:
+        return Change(what, np.inf, abs(pole) / (2.0 * np.pi))
+    return _change(what, _response(real, f_hz), ideal, f_hz)
 
 
 def _response(network: Network, f_hz: FloatArray) -> ComplexArray:

@@ -66,6 +66,8 @@ def _decibels(value: float) -> str:
 
 
 def _change(change: Change) -> str:
+    if math.isinf(change.worst_db):
+        return f"{change.what}: unstable, a pole in the right half-plane at {hertz(change.at_hz)}"
     return f"{change.what}: {change.worst_db:+.2g} dB at {hertz(change.at_hz)}"
 
 

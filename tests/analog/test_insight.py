@@ -48,6 +48,19 @@ def test_ideal_op_amps_are_held_against_everyday_ones():
     assert change.worst_db == pytest.approx(expected, abs=1e-5)
 
 
+def test_everyday_op_amps_that_would_make_a_circuit_unstable():
+    """Tow-Thomas at 15.9 kHz with Q 50: the delay of 3 MHz op-amps raises Q by 1/(1 - 4·Q·f0/GBW) (from memory), here
+    beyond all bounds, since 4·Q·f0 is above 3 MHz; with Q 10 it is not.
+    """
+    values = {"R1": 1e4, "R2": 5e5, "R3": 1e4, "R4": 1e4, "R5": 1e4, "R6": 1e4, "C1": 1e-9, "C2": 1e-9}
+    circuit = CIRCUITS["tow_thomas_bandpass"]
+    (change,) = changes(circuit.build(circuit.parts(**values)), BAND)
+    assert change.worst_db == math.inf
+    assert change.at_hz == pytest.approx(15.9e3, rel=0.05)
+    (calm,) = changes(circuit.build(circuit.parts(**{**values, "R2": 1e5})), BAND)
+    assert math.isfinite(calm.worst_db)
+
+
 def test_source_and_load():
     """600 Ω into 600 Ω halves; the load's own change is that of the whole divider, and so is the source's."""
     parts = {"R1": r(1e6, "in", "gnd"), "C1": c(1e-12, "in", "gnd")}

@@ -28,10 +28,10 @@ def check_stability(network: Network) -> None:
         Unstable; the message has the frequency, and the op-amp whose inputs are the wrong way round, if one is.
     """
     active = any(isinstance(part, (OpAmp, ControlledVoltage, ControlledCurrent)) for part in network.parts.values())
-    worst = _growing_pole(network) if active else None
+    worst = growing_pole(network) if active else None
     if worst is None:
         return
-    culprit = next((name for name in _op_amps(network) if _growing_pole(_swapped(network, name)) is None), None)
+    culprit = next((name for name in _op_amps(network) if growing_pole(_swapped(network, name)) is None), None)
     why = "look for feedback of the wrong sign or too much of it"
     if culprit is not None:
         why = f'op-amp "{culprit}" has its inputs the wrong way round, plus where minus belongs'
@@ -40,7 +40,7 @@ def check_stability(network: Network) -> None:
     )
 
 
-def _growing_pole(network: Network) -> complex | None:
+def growing_pole(network: Network) -> complex | None:
     """The pole furthest into the right half-plane, relative to its size; None when there is none."""
     layout = lay_out(_quickened(network))
     poles: ComplexArray = poles_of(layout.pencil(np.array(layout.nominal)))
