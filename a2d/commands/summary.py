@@ -124,7 +124,26 @@ def notes(conversion: Conversion) -> list[str]:
             f"{e.name}: shelf {'of first order' if e.order == 1 else 'as in the W3C note'}, half the gain in dB at f0"
             for e in shelves
         ]
+        + _unused_matches(conversion)
     )
+
+
+def _unused_matches(conversion: Conversion) -> list[str]:
+    """Sections whose `match` has no effect, since their method has no frequency at which it is exact."""
+    unused: dict[str, list[str]] = {}
+    for judged in conversion.judged:
+        twin, chain = judged.twin, conversion.chain
+        for i, owner in enumerate(chain.owners):
+            entry = conversion.design.sections[owner]
+            exact = len(twin) == len(chain) and twin.methods[i] in EXACT_AT_MATCH
+            parallel = isinstance(entry, BankSection) and entry.form == "parallel"  # its bands may use it
+            if entry.match is not None and not exact and not parallel:
+                rates = unused.setdefault(entry.name, [])
+                rates += [rate for rate in [hertz(twin.sample_rate_hz)] if rate not in rates]
+    return [
+        f"{name}: match has no effect at {', '.join(rates)}: minimax is exact at no stated frequency"
+        for name, rates in unused.items()
+    ]
 
 
 def circuits_table(conversion: Conversion) -> RenderableType | None:

@@ -73,3 +73,15 @@ def test_a_method_that_is_exact_nowhere_claims_no_match_frequency(capsys, tmp_pa
     assert [section["match_hz"] for twin in twins for section in twin["sections"]] == [None, None]
     assert ",minimax,," in (tmp_path / f"{name}.sos.csv").read_text()
     assert "f0 338627" in (tmp_path / f"{name}.h").read_text()
+
+
+def test_a_match_that_has_no_effect_is_said(capsys, tmp_path):
+    from a2d.cli import main
+
+    path = tmp_path / "stage.toml"
+    stated = DESIGN.replace('name = "output"', 'name = "output"\nmatch = "12 kHz"\nmethod = "minimax"')
+    for text, said in ((stated, True), (stated.replace("minimax", "magnitude_matched"), False)):
+        path.write_text(text)
+        assert main(["convert", str(path), "--out", str(tmp_path)]) == 0
+        told = "output: match has no effect at 48 kHz, 192 kHz" in " ".join(capsys.readouterr().out.split())
+        assert told is said
