@@ -64,7 +64,7 @@ def remedies(
     """The first change of method or scope that keeps the limits, and a doubled rate where that does.
 
     Each is tried and compared, from the simplest on. Where none keeps them, the one that comes nearest, if any comes
-    nearer than the twin whose limits are `broken`.
+    nearer than the twin whose limits are `broken`; the doubled rate where only that does.
     """
     kept, tried = [], []
     in_phase = not any(breach.unit == "dB" for breach in broken)
@@ -79,6 +79,8 @@ def remedies(
     if doubled is not None and not doubled.breaches:
         kept.append(doubled)
     nearer = [remedy for remedy in tried if _passed(remedy.breaches) < _passed(broken)]
+    if doubled is not None and not nearer and _passed(doubled.breaches) < _passed(broken):
+        nearer = [doubled]
     if kept or not nearer:
         return tuple(kept)
     return (min(nearer, key=lambda remedy: _passed(remedy.breaches)),)

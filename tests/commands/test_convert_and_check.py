@@ -72,6 +72,17 @@ def test_a_broken_limit_is_status_1_and_is_said(design: Path, capsys: pytest.Cap
     assert [t["within_limits"] for t in twins] == [False, True]
 
 
+def test_a_doubled_rate_that_alone_comes_nearer_is_said(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """No fit that was tried betters the group delay of this bell; twice the rate leaves a quarter of the error."""
+    path = tmp_path / "bell.toml"
+    path.write_text(
+        '[design]\nname = "bell"\nsample_rates = ["48 kHz"]\n[limits]\ngroup_delay = "0.1 us"\n'
+        '[[section]]\nname = "a"\nkind = "peaking"\nf0 = "9 kHz"\nq = 1\ngain = "9 dB"\n'
+    )
+    assert main(["convert", str(path), "--out", str(tmp_path)]) == 1
+    assert "a rate of 96000 Hz comes nearer: group delay error +2.3" in capsys.readouterr().err
+
+
 def test_a_limit_is_not_passed_by_rounding_a_figure(design: Path) -> None:
     worst = abs(a2d.convert(a2d.read_design(design)).judged[0].comparison.magnitude_db.worst)
     for limit, status in ((worst, 0), (np.nextafter(worst, 0.0), 1)):
