@@ -5,6 +5,8 @@ from __future__ import annotations
 import json
 from typing import Any
 
+import numpy as np
+
 from a2d.compare.banks import JudgedBank, parallel_banks
 from a2d.compare.errors import Comparison, Worst
 from a2d.conversion import Conversion, Judged
@@ -57,7 +59,7 @@ def _twin(judged: Judged) -> dict[str, Any]:
     return {
         "sample_rate_hz": float(twin.sample_rate_hz),
         "sections": [
-            {"name": name, "method": method, "match_hz": _exact_at(method, match), "sos": row.tolist()}
+            {"name": name, "method": method, **_match(method, match), "sos": row.tolist()}
             | ({"why": twin.why[i]} if twin.why and twin.why[i] else {})
             | (_certificate(judged.proofs[i]) if judged.proofs else {})
             for i, (name, method, match, row) in enumerate(
@@ -72,9 +74,12 @@ def _twin(judged: Judged) -> dict[str, Any]:
     }
 
 
-def _exact_at(method: str, match_hz: float) -> float | None:
-    """Where a section is exact; None for a method that is exact nowhere in particular."""
-    return float(match_hz) if method in EXACT_AT_MATCH else None
+def _match(method: str, match_hz: float) -> dict[str, Any]:
+    """The match frequency, and whether the method is exact there; null where a fit of several sections has none."""
+    return {
+        "match_hz": float(match_hz) if np.isfinite(match_hz) else None,
+        "exact_at_match": method in EXACT_AT_MATCH,
+    }
 
 
 def _bank(judged: JudgedBank) -> dict[str, Any]:
@@ -141,8 +146,7 @@ def sos_table(conversion: Conversion) -> str:
     for judged in conversion.judged:
         twin = judged.twin
         for name, method, match, row in zip(twin.names, twin.methods, twin.match_hz, twin.sos, strict=True):
-            exact_at = _exact_at(method, match)
-            numbers = ["" if exact_at is None else repr(exact_at), *(repr(float(v)) for v in row)]
+            numbers = [repr(float(match)) if method in EXACT_AT_MATCH else "", *(repr(float(v)) for v in row)]
             quoted = '"' + name.replace('"', '""') + '"'
             lines.append(",".join([repr(float(twin.sample_rate_hz)), quoted, method, *numbers]))
     return "\n".join(lines) + "\n"

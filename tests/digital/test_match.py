@@ -70,7 +70,7 @@ def test_a_method_that_is_exact_nowhere_claims_no_match_frequency(capsys, tmp_pa
     assert "exact at the band's upper end" not in " ".join(capsys.readouterr().out.split())
     name = next(tmp_path.glob("*.twin.json")).name.removesuffix(".twin.json")
     twins = json.loads((tmp_path / f"{name}.twin.json").read_text())["twins"]
-    assert [section["match_hz"] for twin in twins for section in twin["sections"]] == [None, None]
+    assert [section["exact_at_match"] for twin in twins for section in twin["sections"]] == [False, False]
     assert ",minimax,," in (tmp_path / f"{name}.sos.csv").read_text()
     assert "f0 338627" in (tmp_path / f"{name}.h").read_text()
 
